@@ -1,0 +1,5 @@
+//! Patches, their geometry, areas and distances; reading them from GeoJSON and CSV.
+
+mod patch;
+
+pub use patch::{Crs, Landscape, Patch, Start};

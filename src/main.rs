@@ -1,0 +1,2 @@
+//! eyot
+fn main() {}

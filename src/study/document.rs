@@ -1,0 +1,227 @@
+//! The TOML document as a tree of owned nodes, each with its place, and the mistakes found while walking it.
+
+use std::cell::RefCell;
+use std::ops::Range;
+use std::path::{Path, PathBuf};
+
+use sha2::{Digest, Sha256};
+use toml::de::{DeTable, DeValue};
+
+use super::table::{Said, Table};
+use crate::mistake::{Failure, Mistake, Mistakes, Place};
+
+/// A file that went into the study, with the hash by which it can be known again.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Input {
+    /// the path as the study writes it, or the study's own file name
+    pub path: String,
+    /// SHA-256 of its bytes (FIPS 180-4), in hexadecimal
+    pub sha256: String,
+}
+
+/// A study file that has been parsed; what it means is read from it with [`Document::root`].
+#[derive(Debug)]
+pub struct Document {
+    file: PathBuf,
+    text: String,
+    root: Vec<Entry>,
+    mistakes: RefCell<Vec<Mistake>>,
+    warnings: RefCell<Vec<Mistake>>,
+    inputs: RefCell<Vec<Input>>,
+}
+
+#[derive(Debug)]
+pub(super) struct Entry {
+    pub(super) key: String,
+    pub(super) key_span: Range<usize>,
+    pub(super) node: Node,
+}
+
+#[derive(Debug)]
+pub(super) struct Node {
+    pub(super) span: Range<usize>,
+    pub(super) value: Value,
+}
+
+#[derive(Debug)]
+pub(super) enum Value {
+    Text(String),
+    Number(f64),
+    Whole(i64),
+    Flag(bool),
+    Date,
+    List(Vec<Node>),
+    Table(Vec<Entry>),
+}
+
+impl Document {
+    /// Reads and parses a study file. Faults of the TOML itself are kept with the other mistakes.
+    ///
+    /// # Errors
+    /// If the file cannot be read.
+    pub fn open(file: &Path) -> Result<Self, Failure> {
+        let bytes = std::fs::read(file).map_err(|error| match error.kind() {
+            std::io::ErrorKind::NotFound => Mistake::new(Place::file(file), "no such file", "a study file in TOML")
+                .advise("check the path, or write a first study with `eyot new DIR --patches FILE`")
+                .into(),
+            _ => Failure::system(file, "read", error),
+        })?;
+        let text = String::from_utf8(bytes).map_err(|error| {
+            let line = 1 + error.as_bytes()[..error.utf8_error().valid_up_to()].iter().filter(|b| **b == b'\n').count();
+            let place = Place::Text { file: file.to_path_buf(), line, column: 1 };
+            Mistake::new(place, "bytes that are not UTF-8", "a text file").advise("save the study as UTF-8 text")
+        })?;
+        Ok(Self::parse(file, text))
+    }
+
+    /// Parses the text of a study; `file` is the name that mistakes show and that relative paths start from.
+    pub fn parse(file: &Path, text: String) -> Self {
+        let (table, faults) = DeTable::parse_recoverable(&text);
+        let root = entries(table.get_ref());
+        let name = file.file_name().map(|name| name.to_string_lossy().into_owned()).unwrap_or_default();
+        let study = Input { path: name, sha256: sha256(text.as_bytes()) };
+        let document = Self {
+            file: file.to_path_buf(),
+            text,
+            root,
+            mistakes: RefCell::default(),
+            warnings: RefCell::default(),
+            inputs: RefCell::new(vec![study]),
+        };
+        for fault in faults {
+            let span = fault.span().unwrap_or(0..0);
+            let place = document.place(span.start);
+            let line = document.text.lines().nth(line_of(&place) - 1).unwrap_or_default().trim().to_owned();
+            document.mistake(Mistake::new(place, line, format!("TOML: {}", fault.message())));
+        }
+        document
+    }
+
+    /// The name of the file as it was given.
+    pub fn file(&self) -> &Path {
+        &self.file
+    }
+
+    /// The text of the file.
+    pub fn text(&self) -> &str {
+        &self.text
+    }
+
+    /// The whole file as a table to read from.
+    pub fn root(&self) -> Table<'_> {
+        Table::new(self, String::new(), &self.root, Place::file(&self.file))
+    }
+
+    /// A path written in the study, relative to the study file.
+    pub fn resolve(&self, path: &str) -> PathBuf {
+        self.file.parent().unwrap_or(Path::new("")).join(path)
+    }
+
+    /// Reads a data file that the study names, and remembers its hash. `None`, with the mistake noted, if it cannot be read.
+    pub fn read_file(&self, said: &Said<String>) -> Option<(PathBuf, Vec<u8>)> {
+        let path = self.resolve(&said.value);
+        match std::fs::read(&path) {
+            Ok(bytes) => {
+                let input = Input { path: said.value.clone(), sha256: sha256(&bytes) };
+                let mut inputs = self.inputs.borrow_mut();
+                if !inputs.contains(&input) {
+                    inputs.push(input);
+                }
+                Some((path, bytes))
+            }
+            Err(error) => {
+                let why = format!("a file that can be read; {} cannot be: {error}", path.display());
+                self.mistake(said.mistake(why).advise("paths are relative to the study file"));
+                None
+            }
+        }
+    }
+
+    /// The study and every data file read so far, in the order of reading.
+    pub fn inputs(&self) -> Vec<Input> {
+        self.inputs.borrow().clone()
+    }
+
+    /// Notes a mistake; reading goes on.
+    pub fn mistake(&self, mistake: Mistake) {
+        self.mistakes.borrow_mut().push(mistake);
+    }
+
+    /// Notes something lawful but odd.
+    pub fn warning(&self, warning: Mistake) {
+        self.warnings.borrow_mut().push(warning);
+    }
+
+    /// Whether no mistake has been noted so far.
+    pub fn is_clean(&self) -> bool {
+        self.mistakes.borrow().is_empty()
+    }
+
+    /// The warnings noted so far.
+    ///
+    /// # Errors
+    /// All mistakes noted so far, if there is one.
+    pub fn verdict(&self) -> Result<Vec<Mistake>, Mistakes> {
+        Mistakes::none_in(self.mistakes.borrow().clone())?;
+        Ok(self.warnings.borrow().clone())
+    }
+
+    pub(super) fn place(&self, offset: usize) -> Place {
+        let before = &self.text[..self.text.floor_char_boundary(offset)];
+        let line = before.matches('\n').count() + 1;
+        let column = before.rsplit('\n').next().map_or(0, |last| last.chars().count()) + 1;
+        Place::Text { file: self.file.clone(), line, column }
+    }
+
+    pub(super) fn words(&self, span: &Range<usize>) -> String {
+        let whole = self.text.get(span.clone()).unwrap_or_default();
+        let first = whole.lines().next().unwrap_or_default().trim();
+        if whole.lines().count() > 1 || first.chars().count() > 60 {
+            format!("{} ...", first.chars().take(60).collect::<String>().trim_end())
+        } else {
+            first.to_owned()
+        }
+    }
+}
+
+fn sha256(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
+}
+
+fn line_of(place: &Place) -> usize {
+    match place {
+        Place::Text { line, .. } | Place::Row { line, .. } => *line,
+        _ => 1,
+    }
+}
+
+/// The entries of a TOML table in the order in which the file has them.
+fn entries(table: &DeTable<'_>) -> Vec<Entry> {
+    let mut entries: Vec<Entry> = table
+        .iter()
+        .map(|(key, value)| Entry {
+            key: key.get_ref().to_string(),
+            key_span: key.span(),
+            node: node(value.get_ref(), value.span()),
+        })
+        .collect();
+    entries.sort_by_key(|entry| entry.key_span.start);
+    entries
+}
+
+fn node(value: &DeValue<'_>, span: Range<usize>) -> Node {
+    let value = match value {
+        DeValue::String(text) => Value::Text(text.to_string()),
+        // A number too large for its type is read as infinite, which every check of a range then refuses in words.
+        DeValue::Integer(digits) => match i64::from_str_radix(digits.as_str(), digits.radix()) {
+            Ok(whole) => Value::Whole(whole),
+            Err(_) => Value::Number(f64::INFINITY),
+        },
+        DeValue::Float(digits) => Value::Number(digits.as_str().parse().unwrap_or(f64::NAN)),
+        DeValue::Boolean(flag) => Value::Flag(*flag),
+        DeValue::Datetime(_) => Value::Date,
+        DeValue::Array(items) => Value::List(items.iter().map(|item| node(item.get_ref(), item.span())).collect()),
+        DeValue::Table(table) => Value::Table(entries(table)),
+    };
+    Node { span, value }
+}
