@@ -1,1 +1,13 @@
-//! The room `demography`.
+//! Vital rates, projection matrices, density dependence, and the local step of each kind of model.
+
+pub mod density;
+mod life_history;
+pub mod local;
+mod matrix;
+mod rate;
+mod start;
+
+pub use life_history::{LifeHistory, Stage};
+pub use matrix::{Matrix, ProjectionMatrix};
+pub use rate::{Law, Rate, RateGroup};
+pub use start::{ceiling_cut, split_total};

@@ -1,0 +1,68 @@
+//! The life history of the species, whatever its kind.
+
+use std::sync::Arc;
+
+use super::density::Density;
+use super::local::{self, LocalModel};
+use super::matrix::ProjectionMatrix;
+use super::rate::Rate;
+use crate::study::{Said, Table};
+
+/// A stage of the life history.
+#[derive(Debug, Clone)]
+pub struct Stage {
+    /// its name
+    pub name: String,
+    /// probability that an individual of this stage leaves its patch in a year
+    pub emigration: f64,
+    /// what an individual counts toward capacity, 0 to 1
+    pub toward_capacity: f64,
+}
+
+/// A life history: what individuals there are, their rates, and the local model that steps them through a year.
+#[derive(Debug, Clone)]
+pub struct LifeHistory {
+    /// the kind, as the study names it
+    pub kind: &'static str,
+    /// what is counted, such as `females`
+    pub individuals: String,
+    /// the stages, at least one
+    pub stages: Vec<Stage>,
+    /// every rate that may vary, in the order in which the local model takes them
+    pub rates: Vec<Rate>,
+    /// the projection matrix of mean rates
+    pub matrix: ProjectionMatrix,
+    /// how numbers are held near capacity
+    pub density: Density,
+    /// the step of a year
+    pub model: Arc<dyn LocalModel>,
+    /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`
+    pub emigration_said: Option<Said<f64>>,
+}
+
+impl LifeHistory {
+    /// Reads `[life_history]`. Mistakes are noted in the document; `None` if there was one.
+    pub fn read(table: Table<'_>) -> Option<Self> {
+        let choices: Vec<(&str, local::ReadKind)> = local::KINDS.to_vec();
+        let Some(kind) = table.choice("kind", &choices) else {
+            if !table.has("kind") {
+                let names: Vec<String> = local::KINDS.iter().map(|(name, _)| format!("\"{name}\"")).collect();
+                table.missing("kind", names.join(" or "));
+            }
+            return None;
+        };
+        let life_history = (kind.value)(&table);
+        table.finish();
+        life_history
+    }
+
+    /// Whether any rate varies from year to year.
+    pub fn varies(&self) -> bool {
+        self.rates.iter().any(|rate| rate.sd > 0.0)
+    }
+
+    /// The names of the stages.
+    pub fn stage_names(&self) -> Vec<String> {
+        self.stages.iter().map(|stage| stage.name.clone()).collect()
+    }
+}
