@@ -1,5 +1,20 @@
 //! A study compiled to dense arrays, its replicates run in parallel, and the integers they leave.
+//!
+//! [`prepare`] alone meets the study: it reads, checks, links and compiles. What it hands on, a [`Model`], is valid: the
+//! yearly loop has no error path, no strings, no files and no geometry.
 
+mod compile;
+mod model;
+mod movement;
+mod prepare;
+mod realise;
+mod replicate;
+mod run;
 mod tally;
+mod year;
 
+pub use compile::start_counts;
+pub use model::{Model, Threshold};
+pub use prepare::{Overrides, Prepared, prepare};
+pub use run::{Progress, Run, run};
 pub use tally::{PatchTally, Record, Tallies};

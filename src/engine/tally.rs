@@ -60,3 +60,67 @@ pub struct Tallies {
     /// movers summed over years and replicates, one a link of the network
     pub movers: Vec<u64>,
 }
+
+impl Tallies {
+    /// The sum over no replicates.
+    pub fn empty(horizon: u32, n_patches: usize, n_links: usize) -> Self {
+        Self {
+            horizon,
+            records: Vec::new(),
+            occupied_patches: vec![0; horizon as usize + 1],
+            patches: vec![PatchTally::default(); n_patches],
+            movers: vec![0; n_links],
+        }
+    }
+
+    /// Replicates in the sum.
+    pub fn n_replicates(&self) -> usize {
+        self.records.len()
+    }
+
+    /// Replicates with at least one individual at the last census.
+    pub fn persisting(&self) -> u64 {
+        self.records.iter().filter(|record| record.totals.last().is_some_and(|total| *total > 0)).count() as u64
+    }
+
+    /// Adds the sum over other replicates of the same model; the result is the same in any order of adding.
+    ///
+    /// # Panics
+    /// If the two are of models with other horizons, patches or links.
+    pub fn merge(&mut self, other: Self) {
+        assert_eq!(self.horizon, other.horizon, "sums of one model");
+        assert_eq!(self.patches.len(), other.patches.len(), "sums of one model");
+        assert_eq!(self.movers.len(), other.movers.len(), "sums of one model");
+        self.records.extend(other.records);
+        self.records.sort_by_key(|record| record.replicate);
+        add_all(&mut self.occupied_patches, &other.occupied_patches);
+        add_all(&mut self.movers, &other.movers);
+        for (tally, more) in self.patches.iter_mut().zip(&other.patches) {
+            tally.add(more);
+        }
+    }
+}
+
+fn add_all(sums: &mut [u64], more: &[u64]) {
+    for (sum, more) in sums.iter_mut().zip(more) {
+        *sum += more;
+    }
+}
+
+impl PatchTally {
+    fn add(&mut self, more: &Self) {
+        self.occupied_at_end += more.occupied_at_end;
+        self.years_occupied += more.years_occupied;
+        self.abundance += more.abundance;
+        self.abundance_squares += more.abundance_squares;
+        self.abundance_at_end += more.abundance_at_end;
+        self.abundance_at_end_squares += more.abundance_at_end_squares;
+        self.local_extinctions += more.local_extinctions;
+        self.recolonisations += more.recolonisations;
+        self.immigrants += more.immigrants;
+        self.emigrants += more.emigrants;
+        self.arrived_elsewhere += more.arrived_elsewhere;
+        self.net_export += more.net_export;
+        self.net_export_squares += more.net_export_squares;
+    }
+}

@@ -1,0 +1,75 @@
+//! A compiled model: dense arrays indexed by patch and stage, and nothing that could fail.
+
+use std::sync::Arc;
+
+use super::movement::Movement;
+use super::realise::Rates;
+use crate::demography::density::Curve;
+use crate::demography::local::LocalModel;
+
+/// The threshold of quasi-extinction.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Threshold {
+    /// quasi-extinct where a census counts fewer than this
+    pub below: u64,
+    /// the stages that are counted, by position
+    pub stages: Vec<usize>,
+}
+
+/// How numbers press on rates.
+#[derive(Debug, Clone)]
+pub(super) struct Crowding {
+    pub(super) curve: Arc<dyn Curve>,
+    pub(super) on_survival: bool,
+    pub(super) on_fecundity: bool,
+}
+
+/// A study compiled for simulation. Patches stand in canonical order (by name), stages in the order of the life history.
+#[derive(Debug)]
+pub struct Model {
+    pub(super) seed: u64,
+    pub(super) horizon: u32,
+    pub(super) n_stages: usize,
+    /// one key a patch, from its name alone
+    pub(super) patch_keys: Vec<u64>,
+    /// individuals at census 0, `[patch][stage]`
+    pub(super) start: Vec<u32>,
+    /// carrying capacity by patch
+    pub(super) capacity: Vec<f64>,
+    /// what an individual of each stage counts toward capacity
+    pub(super) toward_capacity: Vec<f64>,
+    pub(super) local: Arc<dyn LocalModel>,
+    pub(super) crowding: Option<Crowding>,
+    /// whether surplus over capacity is removed at the end of the year
+    pub(super) ceiling: bool,
+    pub(super) rates: Rates,
+    pub(super) movement: Option<Movement>,
+    pub(super) threshold: Option<Threshold>,
+}
+
+impl Model {
+    /// Patches.
+    pub fn n_patches(&self) -> usize {
+        self.patch_keys.len()
+    }
+
+    /// Stages.
+    pub fn n_stages(&self) -> usize {
+        self.n_stages
+    }
+
+    /// Years from census 0 to the last.
+    pub fn horizon(&self) -> u32 {
+        self.horizon
+    }
+
+    /// Individuals of each patch at census 0.
+    pub fn start_totals(&self) -> Vec<u64> {
+        self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
+    }
+
+    /// Links along which individuals may move.
+    pub fn n_links(&self) -> usize {
+        self.movement.as_ref().map_or(0, Movement::n_links)
+    }
+}
