@@ -16,8 +16,9 @@ use crate::mistake::Mistake;
 /// Overlaps below this share of the smaller patch are slips of the pen and no warning.
 const SLIP: f64 = 0.001;
 
-/// So many overlaps are measured at most; a layer with more has been told enough.
-const MOST_OVERLAPS: usize = 1000;
+/// Overlaps are measured until so many vertices have gone into it, some seconds of work: a layer with more of them has been
+/// warned enough.
+const MOST_VERTICES: usize = 20_000_000;
 
 /// Notes every geometry that an earlier feature already has, coordinate for coordinate.
 pub(super) fn refuse_duplicates(features: &[Feature], file: &Path, findings: &Findings<'_>) {
@@ -65,12 +66,12 @@ pub(super) fn warn_of_overlaps(patches: &[Patch], findings: &Findings<'_>) {
     let mut from_west: Vec<(usize, &EdgeTree)> =
         trees.iter().enumerate().filter_map(|(position, tree)| Some((position, tree.as_ref()?))).collect();
     from_west.sort_by(|a, b| west_east(a.1).0.total_cmp(&west_east(b.1).0));
-    let mut overlaps = 0;
+    let mut vertices = 0;
     for (rank, (i, first)) in from_west.iter().enumerate() {
         let east = west_east(first).1;
         for (j, second) in from_west[rank + 1..].iter().take_while(|(_, second)| west_east(second).0 < east) {
-            if overlaps < MOST_OVERLAPS && share_ground(first, second) {
-                overlaps += 1;
+            if vertices < MOST_VERTICES && share_ground(first, second) {
+                vertices += first.edges().len() + second.edges().len();
                 warn_of_overlap(&patches[*i.min(j)], &patches[*i.max(j)], findings);
             }
         }
