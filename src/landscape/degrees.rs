@@ -16,6 +16,9 @@ const FARTHEST_LONGITUDE: f64 = 360.0;
 /// Planar coordinates beyond this many metres are no place on Earth.
 const FARTHEST_METRES: f64 = 1e8;
 
+/// A landscape narrower than this many metres is one in degrees.
+const NARROWEST_METRES: f64 = 10.0;
+
 /// Says whether all coordinates can be what the study says they are; if not, that is one mistake of the file.
 pub(super) fn check_range(
     features: &[Feature],
@@ -28,10 +31,7 @@ pub(super) fn check_range(
         features.iter().filter_map(|feature| Some((feature, feature.geometry.as_ref()?.bounding_rect()?))).collect();
     let wrong: Vec<_> = boxes.iter().filter(|(_, bounds)| !fits(bounds, crs)).collect();
     let Some((first, bounds)) = wrong.first() else {
-        if crs == Crs::Metres {
-            warn_of_degrees(file, &boxes, findings);
-        }
-        return true;
+        return crs == Crs::Degrees || !are_degrees(file, &boxes, findings);
     };
     let at = farthest_corner(bounds);
     let mut found = format!("coordinates such as {}, {}", at.x, at.y);
@@ -81,16 +81,32 @@ fn crs_name(member: Option<&Value>) -> Option<&str> {
     member?.get("properties")?.get("name")?.as_str()
 }
 
-fn warn_of_degrees(file: &Path, boxes: &[(&Feature, Rect<f64>)], findings: &Findings<'_>) {
-    let could_be = boxes.iter().all(|(_, bounds)| {
-        let (low, high) = (bounds.min(), bounds.max());
-        low.x >= -180.0 && high.x <= 180.0 && low.y >= -90.0 && high.y <= 90.0
+/// Whether coordinates that the study calls metres must be degrees, which is one mistake; where they may be, that is a
+/// warning.
+fn are_degrees(file: &Path, boxes: &[(&Feature, Rect<f64>)], findings: &Findings<'_>) -> bool {
+    let everything = boxes.iter().map(|(_, bounds)| *bounds).reduce(|a, b| {
+        let (low, high) = (a.min(), a.max());
+        Rect::new(
+            Coord { x: low.x.min(b.min().x), y: low.y.min(b.min().y) },
+            Coord { x: high.x.max(b.max().x), y: high.y.max(b.max().y) },
+        )
     });
-    if could_be && !boxes.is_empty() {
-        let found = "all coordinates lie within 180 and 90";
-        let warning = Mistake::new(Place::file(file), found, "read as metres: a landscape a few hundred metres wide");
-        findings.warning("degrees", warning.advise("if they are degrees, take crs = \"metres\" out of [landscape]"));
+    let Some(everything) = everything.filter(|bounds| {
+        let farthest = farthest_corner(bounds);
+        farthest.x.abs() <= 180.0 && farthest.y.abs() <= 90.0
+    }) else {
+        return false;
+    };
+    let width_m = everything.width().max(everything.height());
+    let found = format!("a landscape {width_m:.3} m across, all coordinates within 180 and 90");
+    let advice = "if they are degrees, take crs = \"metres\" out of [landscape]";
+    let note = |expected: &str| Mistake::new(Place::file(file), found.clone(), expected).advise(advice);
+    if width_m < NARROWEST_METRES {
+        findings.mistake("degrees", note("planar metres"));
+        return true;
     }
+    findings.warning("degrees", note("read as metres"));
+    false
 }
 
 /// An outline of polygons whose longitudes run on across the antimeridian: every vertex lies within half the way round of

@@ -25,9 +25,8 @@ pub const WGS84: Ellipsoid =
 /// degree aside.
 const MOST_NORTHERN_CENTRE: f64 = 89.0;
 
-/// The farthest from the centre that a landscape may lie: a quarter of the way round the Earth, as the cosine of the
-/// angle.
-const FARTHEST_COSINE: f64 = 0.0;
+/// The farthest from the centre that a landscape may lie, as the cosine of the angle: 60 degrees, some 6,700 km.
+const FARTHEST_COSINE: f64 = 0.5;
 
 /// The Lambert azimuthal equal-area projection of an ellipsoid, oblique aspect.
 ///

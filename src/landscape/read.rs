@@ -123,7 +123,7 @@ fn measure_all(
         Ok(plane) => plane,
         Err(NoPlane::Nothing) => return None,
         Err(NoPlane::TooWide) => {
-            let found = "patches more than a quarter of the way round the Earth from their middle";
+            let found = "patches more than 6,000 km from their middle";
             let mistake = Mistake::new(Place::file(file), found, "one landscape");
             findings.mistake("wide", mistake.advise("look for stray features in the GIS, often at 0, 0"));
             return None;
@@ -131,14 +131,16 @@ fn measure_all(
     };
     let measured: Vec<Option<Measured>> =
         grounds.par_iter().map(|ground| ground.as_ref().map(|(_, ground)| measure(ground, &plane))).collect();
+    let mut sound = true;
     for (feature, measured) in features.iter().zip(&measured) {
         if measured.as_ref().is_some_and(|measured| !measured.outline_km.0.is_empty() && measured.area_ha <= 0.0) {
             let mistake = Mistake::new(feature.place(file), "an outline of zero area", "a patch of at least 0.01 m2");
             findings.mistake("no area", mistake.advise("delete the sliver in the GIS, or draw it anew"));
+            sound = false;
         }
     }
     warn_of_width(file, crs, measured.iter().flatten(), findings);
-    measured.into_iter().collect()
+    if sound { measured.into_iter().collect() } else { None }
 }
 
 fn warn_of_width<'m>(file: &Path, crs: Crs, measured: impl Iterator<Item = &'m Measured>, findings: &Findings<'_>) {

@@ -1,29 +1,31 @@
 //! A study that is no more than its `[landscape]` table, and what is made of it.
 
+#![allow(dead_code, reason = "each of the test crates uses its own part")]
+
 use std::path::Path;
 
 use eyot::landscape::{Landscape, LandscapeTable};
 use eyot::study::Document;
 
 /// What came of reading.
-pub struct Reading {
-    pub landscape: Option<Landscape>,
+pub(crate) struct Reading {
+    pub(crate) landscape: Option<Landscape>,
     /// all mistakes, as the user sees them
-    pub mistakes: String,
-    pub n_mistakes: usize,
+    pub(crate) mistakes: String,
+    pub(crate) n_mistakes: usize,
     /// all warnings, each as the user sees it
-    pub warnings: Vec<String>,
+    pub(crate) warnings: Vec<String>,
 }
 
 impl Reading {
     /// The landscape of a study that must be right.
-    pub fn sound(self) -> Landscape {
+    pub(crate) fn sound(self) -> Landscape {
         self.landscape.unwrap_or_else(|| panic!("{}", self.mistakes))
     }
 }
 
 /// Reads a `[landscape]` table and its files, which are written beside it.
-pub fn read(table: &str, files: &[(&str, &[u8])], stages: &[&str]) -> Reading {
+pub(crate) fn read(table: &str, files: &[(&str, &[u8])], stages: &[&str]) -> Reading {
     let folder = tempfile::tempdir().unwrap();
     for (name, bytes) in files {
         std::fs::write(folder.path().join(name), bytes).unwrap();
@@ -52,7 +54,7 @@ fn read_in(folder: &Path, table: &str, stages: &[&str]) -> Reading {
 }
 
 /// A collection of features that are named p1, p2, ... and have the property `ha` = 1.
-pub fn collection(geometries: &[&str]) -> String {
+pub(crate) fn collection(geometries: &[&str]) -> String {
     let features: Vec<String> = geometries
         .iter()
         .enumerate()
@@ -65,12 +67,12 @@ pub fn collection(geometries: &[&str]) -> String {
 }
 
 /// A polygon from its rings, each written `x y, x y, ...`.
-pub fn polygon(rings: &[&str]) -> String {
+pub(crate) fn polygon(rings: &[&str]) -> String {
     format!(r#"{{"type":"Polygon","coordinates":[{}]}}"#, ring_list(rings))
 }
 
 /// The rings of a polygon as JSON.
-pub fn ring_list(rings: &[&str]) -> String {
+pub(crate) fn ring_list(rings: &[&str]) -> String {
     let rings: Vec<String> = rings
         .iter()
         .map(|ring| {
@@ -85,16 +87,16 @@ pub fn ring_list(rings: &[&str]) -> String {
 }
 
 /// A box as a ring, counter-clockwise and closed.
-pub fn box_ring(west: f64, south: f64, east: f64, north: f64) -> String {
+pub(crate) fn box_ring(west: f64, south: f64, east: f64, north: f64) -> String {
     format!("{west} {south}, {east} {south}, {east} {north}, {west} {north}, {west} {south}")
 }
 
 /// A box as a polygon.
-pub fn box_polygon(west: f64, south: f64, east: f64, north: f64) -> String {
+pub(crate) fn box_polygon(west: f64, south: f64, east: f64, north: f64) -> String {
     polygon(&[&box_ring(west, south, east, north)])
 }
 
 /// A point.
-pub fn point(x: f64, y: f64) -> String {
+pub(crate) fn point(x: f64, y: f64) -> String {
     format!(r#"{{"type":"Point","coordinates":[{x},{y}]}}"#)
 }
