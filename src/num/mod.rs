@@ -39,6 +39,11 @@ pub fn cos(x: f64) -> f64 {
     libm::cos(x)
 }
 
+/// Angle in radians, from -pi to pi, of the direction (`x`, `y`) from the positive x axis.
+pub fn atan2(y: f64, x: f64) -> f64 {
+    libm::atan2(y, x)
+}
+
 /// ln of the absolute value of the gamma function.
 pub fn ln_gamma(x: f64) -> f64 {
     libm::lgamma(x)

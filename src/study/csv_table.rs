@@ -88,11 +88,22 @@ impl CsvTable {
 
     /// The number in a cell; notes a mistake if it is not one of `numbers`.
     pub fn number(&self, document: &Document, row: &CsvRow, column: usize, numbers: Numbers) -> Option<f64> {
+        self.number_or(row, column, numbers, |mistake| document.mistake(mistake))
+    }
+
+    /// The number in a cell; hands the mistake to `refuse` if it is not one of `numbers`.
+    pub fn number_or(
+        &self,
+        row: &CsvRow,
+        column: usize,
+        numbers: Numbers,
+        refuse: impl FnOnce(Mistake),
+    ) -> Option<f64> {
         let cell = &row.cells[column];
         let number = cell.parse::<f64>().ok().filter(|number| numbers.admit(*number));
         if number.is_none() {
             let found = format!("{} = {cell}", self.header[column]);
-            document.mistake(Mistake::new(self.place(row.line), found, numbers.to_string()));
+            refuse(Mistake::new(self.place(row.line), found, numbers.to_string()));
         }
         number
     }
