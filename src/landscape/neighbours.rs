@@ -16,7 +16,8 @@ const SLACK_KM: f64 = 1e-6;
 /// Centroids stand in kd-trees, one for every class of sizes, so that one huge patch does not make every small one a
 /// candidate of every other. What a tree lets through is measured from edge to edge.
 ///
-/// # Units    kilometres, rounded to 1 mm
+/// # Units
+/// kilometres, rounded to 1 mm
 #[derive(Debug)]
 pub struct Neighbours {
     between_centroids: bool,
