@@ -256,6 +256,9 @@ fn quality_and_area() {
     let none = text.replace("\"ha\":80", "\"ha\":0");
     assert_refused(&read(&table, &[("p.geojson", none.as_bytes())], &[]), &["feature 0 (p1)", "ha = 0", "above 0"]);
 
+    let huge = text.replace("0.5", "1e308");
+    assert_refused(&read(&table, &[("p.geojson", huge.as_bytes())], &[]), &["feature 0 (p1)", "beyond all numbers"]);
+
     let narrow = format!("{TABLE}landscape_area_ha = 10\n");
     let reading = read(&narrow, &[("p.geojson", collection(&[&good()]).as_bytes())], &[]);
     assert_refused(&reading, &["study.toml:", "landscape_area_ha = 10", "at least the"]);

@@ -117,3 +117,38 @@ proptest! {
         prop_assert_eq!(said(&first.unwrap()), said(&second.unwrap()));
     }
 }
+
+/// A coast of a million vertices, with small patches along it. The area is that of a regular polygon with every second
+/// vertex drawn out, n/2 sin(2 pi / n) r R, here on a plane in metres.
+#[test]
+fn a_patch_of_a_million_vertices_is_read_and_has_neighbours() {
+    const N: u32 = 1_000_000;
+    let (near, far) = (30_000.0, 30_000.02);
+    let vertex = |step: u32| {
+        let angle = std::f64::consts::TAU * f64::from(step % N) / f64::from(N);
+        let radius = if step.is_multiple_of(2) { near } else { far };
+        format!(
+            "[{:.6},{:.6}]",
+            600_000.0 + radius * eyot::num::cos(angle),
+            5_700_000.0 + radius * eyot::num::sin(angle)
+        )
+    };
+    let ring: Vec<String> = (0..=N).map(vertex).collect();
+    let mut geometries = vec![format!(r#"{{"type":"Polygon","coordinates":[[{}]]}}"#, ring.join(","))];
+    geometries.extend((0..300).map(|step| {
+        let y = 5_700_000.0 + 10.0 * f64::from(step);
+        box_polygon(631_000.0, y, 631_005.0, y + 5.0)
+    }));
+    let geometries: Vec<&str> = geometries.iter().map(String::as_str).collect();
+    let table = TABLE.replace("area = { property = \"ha\" }\n", "crs = \"metres\"\n");
+    let landscape = read(&table, &[("p.geojson", collection(&geometries).as_bytes())], &[]).sound();
+    let area_ha = f64::from(N) / 2.0 * eyot::num::sin(std::f64::consts::TAU / f64::from(N)) * near * far / 1e4;
+    assert!((landscape.patches[0].area_ha / area_ha - 1.0).abs() < 1e-9);
+    let neighbours = Neighbours::new(&landscape);
+    assert_eq!(neighbours.within(0, 1.2).len(), 300);
+    let first = landscape.patches.iter().position(|patch| patch.name == "p2").unwrap();
+    let [(_, beside)] = neighbours.within(first, 0.005)[..] else { panic!("one neighbour beside it") };
+    assert!((beside - 0.005).abs() < 1e-9);
+    // Due east of the centre, so the gap is 1000 m less the two centimetres of every second vertex at most.
+    assert!((neighbours.distance_km(0, first) - 1.0).abs() < 2.1e-5);
+}

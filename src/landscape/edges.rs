@@ -1,14 +1,15 @@
 //! The edges of an outline under a tree of boxes, which finds near and meeting edges without trying all pairs.
 //!
-//! The edges keep the order of their rings, so neighbours in the list are neighbours on the ground and the boxes of runs of
-//! eight are small; no sorting is needed. An outline of a million edges is searched about as fast as a small one.
+//! The edges keep the order of their rings, so neighbours in the list are neighbours on the ground and the boxes around
+//! short runs of them are small; no sorting is needed. An outline of a million edges is searched about as fast as a small
+//! one.
 
 use std::ops::{ControlFlow, Range};
 
 use geo::{Coord, Intersects, Line, MultiPolygon};
 
 /// Edges to a box, and boxes to a box above it.
-const RUN: usize = 8;
+const RUN: usize = 4;
 
 /// The edges of one or more closed rings, or a single point.
 #[derive(Debug, Clone)]

@@ -16,7 +16,8 @@ const SLACK_KM: f64 = 1e-6;
 /// Centroids stand in kd-trees, one for every class of sizes, so that one huge patch does not make every small one a
 /// candidate of every other. What a tree lets through is measured from edge to edge.
 ///
-/// # Units    kilometres, rounded to 1 mm
+/// # Units
+/// kilometres, rounded to 1 mm
 #[derive(Debug)]
 pub struct Neighbours {
     between_centroids: bool,
@@ -137,4 +138,109 @@ fn size_classes(centroids_km: &[[f64; 2]], radii_km: &[f64]) -> Vec<SizeClass> {
         classes.push(SizeClass { largest_radius_km, patches: class.to_vec(), tree });
     }
     classes
+}
+
+#[cfg(test)]
+mod tests {
+    use geo::{Distance, Euclidean, Geometry, MultiPolygon, Rect};
+    use proptest::prelude::*;
+
+    use super::*;
+    use crate::landscape::{Crs, Patch, Start};
+    use crate::mistake::Place;
+
+    /// A square of a half-width around a centre, a point where that is 0; kilometres.
+    fn square(index: usize, [x, y]: [f64; 2], half: f64) -> Patch {
+        let shape = Rect::new((x - half, y - half), (x + half, y + half)).to_polygon();
+        let outline = if half > 0.0 { MultiPolygon::new(vec![shape.clone()]) } else { MultiPolygon::new(Vec::new()) };
+        Patch {
+            name: format!("{index:05}"),
+            area_ha: 4.0 * half * half * 100.0,
+            capacity: 1.0,
+            start: Start::Total(1.0),
+            centroid_km: [x, y],
+            radius_km: half * 2.0_f64.sqrt(),
+            outline_km: outline,
+            shape: Geometry::Polygon(shape),
+            place: Place::file("p.geojson"),
+        }
+    }
+
+    fn landscape(squares: &[([f64; 2], f64)], between_centroids: bool) -> Landscape {
+        let patches = squares.iter().enumerate().map(|(index, (centre, half))| square(index, *centre, *half)).collect();
+        Landscape { patches, crs: Crs::Metres, crs_member: None, landscape_area_ha: 1.0, between_centroids }
+    }
+
+    fn squares() -> impl Strategy<Value = Vec<([f64; 2], f64)>> {
+        // One patch may be far larger than the others, and some are points.
+        let half = prop_oneof![Just(0.0), 0.01..0.3, 0.01..0.3, 2.0..6.0];
+        prop::collection::vec(([0.0..20.0, 0.0..20.0], half), 2..40)
+    }
+
+    proptest! {
+        /// Against all pairs, measured with the geometry library.
+        #[test]
+        fn the_search_finds_what_all_pairs_find(squares in squares(), km in 0.0..12.0, centroids in any::<bool>()) {
+            let landscape = landscape(&squares, centroids);
+            let neighbours = Neighbours::new(&landscape);
+            for (i, a) in landscape.patches.iter().enumerate() {
+                let expected: Vec<(usize, f64)> = landscape
+                    .patches
+                    .iter()
+                    .enumerate()
+                    .filter(|(j, _)| *j != i)
+                    .map(|(j, b)| (j, if centroids { between(a, b) } else { Euclidean.distance(&a.shape, &b.shape) }))
+                    .filter(|(_, distance)| *distance <= km)
+                    .collect();
+                let found = neighbours.within(i, km);
+                prop_assert_eq!(found.len(), expected.len());
+                for ((j, distance), (expected_j, expected_distance)) in found.iter().zip(&expected) {
+                    prop_assert_eq!(j, expected_j);
+                    prop_assert!((distance - expected_distance).abs() <= 5.1e-7);
+                    for either_way in [neighbours.distance_km(i, *j), neighbours.distance_km(*j, i)] {
+                        prop_assert_eq!(either_way.to_bits(), distance.to_bits());
+                    }
+                }
+            }
+        }
+
+        #[test]
+        fn wider_searches_add_up(squares in squares(), km in 0.1..3.0) {
+            let landscape = landscape(&squares, false);
+            let neighbours = Neighbours::new(&landscape);
+            let reach = neighbours.reach_km(0);
+            let (mut found, mut to) = (neighbours.within(0, km), km);
+            while to < reach {
+                found.extend(neighbours.beyond_within(0, to, 2.0 * to));
+                to *= 2.0;
+            }
+            found.sort_by_key(|(other, _)| *other);
+            prop_assert_eq!(found.len(), squares.len() - 1);
+            prop_assert_eq!(found, neighbours.within(0, reach));
+        }
+    }
+
+    fn between(a: &Patch, b: &Patch) -> f64 {
+        let (dx, dy) = (a.centroid_km[0] - b.centroid_km[0], a.centroid_km[1] - b.centroid_km[1]);
+        (dx * dx + dy * dy).sqrt()
+    }
+
+    #[test]
+    fn a_regular_grid_has_its_neighbours() {
+        let squares: Vec<_> = (0..10_000).map(|i| ([f64::from(i % 100), f64::from(i / 100)], 0.25)).collect();
+        let neighbours = Neighbours::new(&landscape(&squares, false));
+        let found = neighbours.within(5050, 0.5);
+        let expected = [4950, 5049, 5051, 5150].map(|other| (other, 0.5));
+        assert_eq!(found, expected);
+    }
+
+    #[test]
+    fn one_huge_patch_makes_no_candidates_of_small_ones() {
+        let mut squares: Vec<_> = (0..10_000).map(|i| ([f64::from(i % 100), f64::from(i / 100)], 0.25)).collect();
+        squares.push(([50.0, 250.0], 100.0));
+        let neighbours = Neighbours::new(&landscape(&squares, false));
+        assert!(neighbours.candidates(5050, 0.5).count() < 20);
+        // By hand: its lower edge runs at 150, the upper edges of the top row at 99.25, of the next at 98.25.
+        assert_eq!(neighbours.within(10_000, 51.0).len(), 100);
+    }
 }

@@ -30,9 +30,12 @@ const FARTHEST_COSINE: f64 = 0.5;
 
 /// The Lambert azimuthal equal-area projection of an ellipsoid, oblique aspect.
 ///
-/// # Units    degrees in, metres out
-/// # Source   Snyder 1987, Map projections: a working manual, USGS Professional Paper 1395, equations 3-11 to 3-13 and 24-17
-///            to 24-20; through the library's own sine and logarithm, so that every platform measures the same
+/// # Units
+/// degrees in, metres out
+///
+/// # Source
+/// Snyder 1987, Map projections: a working manual, USGS Professional Paper 1395, equations 3-11 to 3-13 and 24-17 to 24-20.
+/// The sine and the logarithm are the library's own, so that every platform measures the same.
 #[derive(Debug, Clone, Copy)]
 pub struct EqualAreaPlane {
     ellipsoid: Ellipsoid,

@@ -152,7 +152,7 @@ fn warn_of_width<'m>(file: &Path, crs: Crs, measured: impl Iterator<Item = &'m M
     let width_km = (high[0] - low[0]).max(high[1] - low[1]);
     if crs == Crs::Degrees && width_km > WIDEST_KM {
         let found = format!("a landscape {width_km:.0} km across");
-        let expected = format!("beyond {WIDEST_KM} km distances may be wrong by more than 0.4 %; areas stay right");
+        let expected = format!("beyond {WIDEST_KM} km distances may be wrong by more than 0.1 %; areas stay right");
         findings.warning("width", Mistake::new(Place::file(file), found, expected));
     }
 }

@@ -4,12 +4,15 @@ use std::path::Path;
 
 use super::findings::Findings;
 use super::geojson::Feature;
-use super::patch::Start;
+use super::patch::{Patch, Start};
 use super::properties::numbers;
 use super::table::{CapacityFrom, LandscapeTable, StartFrom};
 use super::tables::{self, COUNTS, Counts, Names};
 use crate::mistake::{Mistake, Place};
-use crate::study::{NOT_NEGATIVE, POSITIVE, Said};
+use crate::study::{NOT_NEGATIVE, Numbers, Said};
+
+/// Areas that a patch may have, in hectares: the surface of the Earth at most.
+const AREAS_HA: Numbers = Numbers { low: 0.0, high: 5.1e10, above_low: true, below_high: false };
 
 /// The values that the study gives to each feature; `None` where a mistake has been noted.
 pub(super) struct Values {
@@ -51,7 +54,7 @@ impl Values {
     ) -> Self {
         let source = Source { features, file, findings };
         Self {
-            areas_ha: table.area.as_ref().map_or_else(Vec::new, |area| source.numbers(area, POSITIVE)),
+            areas_ha: table.area.as_ref().map_or_else(Vec::new, |area| source.numbers(area, AREAS_HA)),
             capacities: source.capacities(&table.capacity),
             starts: source.starts(&table.start, stages),
         }
@@ -66,7 +69,7 @@ struct Source<'a> {
 }
 
 impl Source<'_> {
-    fn numbers(&self, property: &Said<String>, admitted: crate::study::Numbers) -> Vec<Option<f64>> {
+    fn numbers(&self, property: &Said<String>, admitted: Numbers) -> Vec<Option<f64>> {
         numbers(self.features, self.file, property, admitted, self.findings)
     }
 
@@ -148,13 +151,12 @@ impl From<Counts> for Start {
     }
 }
 
-/// Notes that there is no capacity anywhere, or nobody to start with.
-pub(super) fn check_totals(
-    table: &LandscapeTable,
-    file: &Path,
-    patches: &[super::patch::Patch],
-    findings: &Findings<'_>,
-) {
+/// Notes capacities beyond all numbers, and that there is no capacity anywhere, or nobody to start with.
+pub(super) fn check_totals(table: &LandscapeTable, file: &Path, patches: &[Patch], findings: &Findings<'_>) {
+    for patch in patches.iter().filter(|patch| !patch.capacity.is_finite()) {
+        let found = "individuals per hectare times area times quality, beyond all numbers";
+        findings.mistake("overflow", Mistake::new(patch.place.clone(), found, "a capacity that can be counted"));
+    }
     if patches.iter().all(|patch| patch.capacity <= 0.0) {
         let (place, words) = table.capacity.said();
         let mistake = Mistake::new(place.clone(), words, "capacity above 0 in at least one patch");

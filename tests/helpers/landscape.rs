@@ -26,9 +26,9 @@ impl Reading {
 
 /// Reads a `[landscape]` table and its files, which are written beside it.
 pub(crate) fn read(table: &str, files: &[(&str, &[u8])], stages: &[&str]) -> Reading {
-    let folder = tempfile::tempdir().unwrap();
+    let folder = tempfile::tempdir().expect("a folder for the study");
     for (name, bytes) in files {
-        std::fs::write(folder.path().join(name), bytes).unwrap();
+        std::fs::write(folder.path().join(name), bytes).expect("the study can be written");
     }
     read_in(folder.path(), table, stages)
 }
