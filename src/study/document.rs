@@ -24,6 +24,8 @@ pub struct Input {
 pub struct Document {
     file: PathBuf,
     text: String,
+    /// where each line of the text begins, in bytes; the first after a byte order mark
+    line_starts: Vec<usize>,
     root: Vec<Entry>,
     mistakes: RefCell<Vec<Mistake>>,
     warnings: RefCell<Vec<Mistake>>,
@@ -82,6 +84,7 @@ impl Document {
         let study = Input { path: name, sha256: sha256(text.as_bytes()) };
         let document = Self {
             file: file.to_path_buf(),
+            line_starts: line_starts(&text),
             text,
             root,
             mistakes: RefCell::default(),
@@ -167,10 +170,10 @@ impl Document {
     }
 
     pub(super) fn place(&self, offset: usize) -> Place {
-        let before = &self.text[..self.text.floor_char_boundary(offset)];
-        let line = before.matches('\n').count() + 1;
-        let column = before.rsplit('\n').next().map_or(0, |last| last.chars().count()) + 1;
-        Place::Text { file: self.file.clone(), line, column }
+        let offset = self.text.floor_char_boundary(offset);
+        let line = self.line_starts.partition_point(|start| *start <= offset).max(1);
+        let before = self.text.get(self.line_starts[line - 1]..offset).unwrap_or_default();
+        Place::Text { file: self.file.clone(), line, column: before.chars().count() + 1 }
     }
 
     pub(super) fn words(&self, span: &Range<usize>) -> String {
@@ -182,6 +185,11 @@ impl Document {
             first.to_owned()
         }
     }
+}
+
+fn line_starts(text: &str) -> Vec<usize> {
+    let first = if text.starts_with('\u{feff}') { '\u{feff}'.len_utf8() } else { 0 };
+    std::iter::once(first).chain(text.match_indices('\n').map(|(at, _)| at + 1)).collect()
 }
 
 fn sha256(bytes: &[u8]) -> String {
