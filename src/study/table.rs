@@ -140,7 +140,7 @@ impl<'d> Table<'d> {
     }
 
     /// Gives the table a name of the study's own in place of its position, so that addresses read
-    /// `life_history.juvenile` and not `life_history.stage.0`.
+    /// `life_history.juvenile` and not `life_history.stage.1`.
     pub fn rename(&mut self, path: String) {
         self.path = path;
     }
@@ -166,10 +166,10 @@ impl<'d> Table<'d> {
         self.document.mistake(Mistake::new(self.place.clone(), found, expected));
     }
 
-    /// Any value.
+    /// Any value; `None` also where the TOML is at fault, which has been noted.
     pub fn item(&self, key: &str) -> Option<Item<'d>> {
         let entry = self.find(key)?;
-        Some(self.item_of(&entry.node, self.address(key), self.document.place(entry.key_span.start)))
+        self.item_of(&entry.node, self.address(key), self.document.place(entry.key_span.start))
     }
 
     /// A string.
@@ -335,7 +335,7 @@ impl<'d> Table<'d> {
             let words = known.iter().map(String::as_str).filter(|word| *word != "origin");
             let mut mistake = Mistake::new(
                 self.document.place(entry.key_span.start),
-                format!("{} is not a key", self.address(&entry.key)),
+                format!("{} is not a key", self.address(&self.document.words(&entry.key_span))),
                 one_of_keys(words.clone()),
             );
             if let Some(near) = nearest_word(&entry.key, words) {
@@ -359,8 +359,9 @@ impl<'d> Table<'d> {
         Said { value, place, words: format!("{path} = {}", self.document.words(&node.span)) }
     }
 
-    fn item_of(&self, node: &'d Node, path: String, place: Place) -> Item<'d> {
-        match &node.value {
+    fn item_of(&self, node: &'d Node, path: String, place: Place) -> Option<Item<'d>> {
+        Some(match &node.value {
+            Value::Faulty => return None,
             Value::Text(text) => Item::Text(self.said(text.clone(), node, &path, place)),
             Value::Number(number) => Item::Number(self.said(*number, node, &path, place)),
             #[expect(clippy::cast_precision_loss, reason = "counts and seeds are read as whole numbers instead")]
@@ -369,17 +370,14 @@ impl<'d> Table<'d> {
             Value::Date => Item::Date(self.said((), node, &path, place)),
             Value::Table(entries) => Item::Table(Table::new(self.document, path, entries, place)),
             Value::List(nodes) => {
-                let items = nodes
-                    .iter()
-                    .enumerate()
-                    .map(|(position, node)| {
-                        let place = self.document.place(node.span.start);
-                        self.item_of(node, format!("{path}.{}", position + 1), place)
-                    })
-                    .collect();
+                let item = |(position, node): (usize, &'d Node)| {
+                    let place = self.document.place(node.span.start);
+                    self.item_of(node, format!("{path}.{}", position + 1), place)
+                };
+                let items = nodes.iter().enumerate().filter_map(item).collect();
                 Item::List(self.said(items, node, &path, place))
             }
-        }
+        })
     }
 }
 
