@@ -60,18 +60,20 @@ impl Numbers {
     pub fn admit(&self, x: f64) -> bool {
         let low_enough = if self.below_high { x < self.high } else { x <= self.high };
         let high_enough = if self.above_low { x > self.low } else { x >= self.low };
-        low_enough && high_enough
+        x.is_finite() && low_enough && high_enough
     }
 }
 
 impl fmt::Display for Numbers {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let low = if self.above_low { format!("above {}", self.low) } else { format!("{} or above", self.low) };
-        match (self.high < f64::MAX, self.above_low || self.below_high) {
-            (false, _) => write!(f, "a number {low}"),
-            (true, false) => write!(f, "a number from {} to {}", self.low, self.high),
-            (true, true) if self.below_high => write!(f, "a number {low} and below {}", self.high),
-            (true, true) => write!(f, "a number {low}, at most {}", self.high),
+        let high = if self.below_high { format!("below {}", self.high) } else { format!("at most {}", self.high) };
+        match (self.low > f64::MIN, self.high < f64::MAX) {
+            (false, false) => write!(f, "a number"),
+            (true, false) => write!(f, "a number {low}"),
+            (false, true) => write!(f, "a number {high}"),
+            (true, true) if self.above_low || self.below_high => write!(f, "a number {low} and {high}"),
+            (true, true) => write!(f, "a number from {} to {}", self.low, self.high),
         }
     }
 }
@@ -198,27 +200,28 @@ impl<'d> Table<'d> {
     pub fn number_of(&self, item: &Item<'_>, numbers: Numbers) -> Option<Said<f64>> {
         match item {
             Item::Number(said) if numbers.admit(said.value) => Some(said.clone()),
+            Item::Number(said) if said.value.is_infinite() => {
+                self.refuse(item, &format!("{numbers}, and not too large to hold"))
+            }
             other => self.refuse(other, &numbers.to_string()),
         }
     }
 
-    /// A whole number from `low` to `high`.
+    /// A whole number from `low` to `high`, at most the largest of TOML, 2^63 - 1.
     pub fn whole(&self, key: &str, low: u64, high: u64) -> Option<Said<u64>> {
-        let expected = if high >= i64::MAX as u64 {
-            format!("a whole number, {low} or above")
-        } else {
-            format!("a whole number from {low} to {high}")
-        };
-        let entry = self.find(key)?;
-        if let Value::Whole(value) = entry.node.value
-            && let Ok(value) = u64::try_from(value)
-            && (low..=high).contains(&value)
-        {
-            let said = self.said(value, &entry.node, &self.address(key), self.document.place(entry.key_span.start));
-            return Some(said);
-        }
+        const LARGEST: u64 = i64::MAX as u64;
         let item = self.item(key)?;
-        self.refuse(&item, &expected)
+        let whole = match self.find(key)?.node.value {
+            Value::Whole(whole) => u64::try_from(whole).ok().filter(|whole| (low..=high).contains(whole)),
+            _ => None,
+        };
+        match (item, whole) {
+            (Item::Number(said), Some(whole)) => Some(said.map(|_| whole)),
+            (item, _) if high < LARGEST || matches!(&item, Item::Number(said) if said.value.is_infinite()) => {
+                self.refuse(&item, &format!("a whole number from {low} to {}", high.min(LARGEST)))
+            }
+            (item, _) => self.refuse(&item, &format!("a whole number, {low} or above")),
+        }
     }
 
     /// A list of numbers, each among `numbers`.
