@@ -195,8 +195,9 @@ impl Document {
             words => words,
         };
         match fault.message() {
-            "duplicate key" => Mistake::new(self.place(start), found, "each key once in its table")
-                .advise("take one of the two out"),
+            "duplicate key" => {
+                Mistake::new(self.place(start), found, "each key once in its table").advise("take one of the two out")
+            }
             message => Mistake::new(self.place(start), found, format!("TOML: {message}")),
         }
     }
