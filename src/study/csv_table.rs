@@ -1,6 +1,6 @@
 //! CSV tables that a study names: a header, and rows that know their line.
 
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 
 use super::document::Document;
 use super::table::{Numbers, Said};

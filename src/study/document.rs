@@ -27,6 +27,7 @@ pub struct Document {
     /// where each line of the text begins, in bytes; the first after a byte order mark
     line_starts: Vec<usize>,
     root: Vec<Entry>,
+    has_faults: bool,
     mistakes: RefCell<Vec<Mistake>>,
     warnings: RefCell<Vec<Mistake>>,
     inputs: RefCell<Vec<Input>>,
@@ -71,8 +72,8 @@ impl Document {
             _ => Failure::system(file, "read", error),
         })?;
         let text = String::from_utf8(bytes).map_err(|error| {
-            let line = 1 + error.as_bytes()[..error.utf8_error().valid_up_to()].iter().filter(|b| **b == b'\n').count();
-            let place = Place::Text { file: file.to_path_buf(), line, column: 1 };
+            let sound = String::from_utf8_lossy(&error.as_bytes()[..error.utf8_error().valid_up_to()]);
+            let place = place(file, &sound, &line_starts(&sound), sound.len());
             Mistake::new(place, "bytes that are not UTF-8", "a text file").advise("save the study as UTF-8 text")
         })?;
         Ok(Self::parse(file, text))
@@ -91,6 +92,7 @@ impl Document {
             line_starts: line_starts(&text),
             text,
             root,
+            has_faults: !faults.is_empty(),
             mistakes: RefCell::default(),
             warnings: RefCell::default(),
             inputs: RefCell::new(vec![study]),
@@ -170,11 +172,13 @@ impl Document {
         Ok(self.warnings.borrow().clone())
     }
 
+    /// Whether the TOML is at fault somewhere, so that keys may be there that the parser did not reach.
+    pub(super) fn has_faults(&self) -> bool {
+        self.has_faults
+    }
+
     pub(super) fn place(&self, offset: usize) -> Place {
-        let offset = self.text.floor_char_boundary(offset);
-        let line = self.line_starts.partition_point(|start| *start <= offset).max(1);
-        let before = self.text.get(self.line_starts[line - 1]..offset).unwrap_or_default();
-        Place::Text { file: self.file.clone(), line, column: before.chars().count() + 1 }
+        place(&self.file, &self.text, &self.line_starts, offset)
     }
 
     /// The words at `span` as a message shows them: one line, not too long, without control characters.
@@ -205,6 +209,13 @@ impl Document {
 
 fn start_of(fault: &toml::de::Error) -> usize {
     fault.span().map_or(0, |span| span.start)
+}
+
+fn place(file: &Path, text: &str, line_starts: &[usize], offset: usize) -> Place {
+    let offset = text.floor_char_boundary(offset);
+    let line = line_starts.partition_point(|start| *start <= offset).max(1);
+    let before = text.get(line_starts[line - 1]..offset).unwrap_or_default();
+    Place::Text { file: file.to_path_buf(), line, column: before.chars().count() + 1 }
 }
 
 fn line_starts(text: &str) -> Vec<usize> {

@@ -157,8 +157,11 @@ impl<'d> Table<'d> {
         self.find(key).is_some()
     }
 
-    /// Notes that a key is missing.
+    /// Notes that a key is missing; not so where the TOML is at fault, for the fault may hide the key.
     pub fn missing(&self, key: &str, expected: impl Into<String>) {
+        if self.document.has_faults() {
+            return;
+        }
         let found = format!("{} is missing", self.address(key));
         self.document.mistake(Mistake::new(self.place.clone(), found, expected));
     }
