@@ -120,7 +120,7 @@ impl fmt::Display for Warning<'_> {
 pub struct Mistakes(Vec<Mistake>);
 
 impl Mistakes {
-    /// `Err` with the mistakes sorted by place if there is any, else `Ok(())`.
+    /// `Err` with the mistakes sorted by place, each once, if there is any, else `Ok(())`.
     ///
     /// # Errors
     /// Whenever `found` holds a mistake.
@@ -129,8 +129,14 @@ impl Mistakes {
             return Ok(());
         }
         found.sort_by(|a, b| a.place.cmp(&b.place));
-        found.dedup();
-        Err(Self(found))
+        let mut kept: Vec<Mistake> = Vec::with_capacity(found.len());
+        for mistake in found {
+            let mut at_this_place = kept.iter().rev().take_while(|other| other.place == mistake.place);
+            if !at_this_place.any(|other| *other == mistake) {
+                kept.push(mistake);
+            }
+        }
+        Err(Self(kept))
     }
 
     /// The mistakes, at least one.
@@ -221,12 +227,17 @@ impl fmt::Display for Failure {
 
 impl std::error::Error for Failure {}
 
-/// The word of `known` nearest to `word`, if one is near enough to be what was meant.
+/// The word of `known` nearest to `word`, if one is near enough to be what was meant: a letter in three may differ, or one
+/// in a word of two.
 pub fn nearest_word<'a>(word: &str, known: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
+    let letters = word.chars().count();
     known
         .into_iter()
         .map(|candidate| (strsim::damerau_levenshtein(&word.to_lowercase(), &candidate.to_lowercase()), candidate))
-        .filter(|(distance, candidate)| *distance <= (candidate.chars().count() / 3).max(1))
+        .filter(|(distance, candidate)| {
+            let of_candidate = candidate.chars().count();
+            *distance <= (of_candidate / 3).max(1) && *distance < letters.min(of_candidate).max(1)
+        })
         .min_by_key(|(distance, _)| *distance)
         .map(|(_, candidate)| candidate)
 }
@@ -248,8 +259,9 @@ mod tests {
     #[test]
     fn mistakes_stand_in_the_order_of_their_places() {
         let at = |line| Mistake::new(Place::Row { file: "a.csv".into(), line }, "x", "y");
-        let all = Mistakes::none_in(vec![at(9), at(2), at(9)]).unwrap_err();
-        assert_eq!(all.as_slice(), [at(2), at(9)]);
+        let other = Mistake { found: "z".to_owned(), ..at(9) };
+        let all = Mistakes::none_in(vec![at(9), at(2), other.clone(), at(9)]).unwrap_err();
+        assert_eq!(all.as_slice(), [at(2), at(9), other]);
         assert!(Mistakes::none_in(Vec::new()).is_ok());
     }
 
@@ -258,5 +270,8 @@ mod tests {
         let known = ["survival", "fecundity", "advance"];
         assert_eq!(nearest_word("survial", known), Some("survival"));
         assert_eq!(nearest_word("horizon", known), None);
+        assert_eq!(nearest_word("q", ["c", "b", "id"]), None);
+        assert_eq!(nearest_word("", ["c"]), None);
+        assert_eq!(nearest_word("C", ["c"]), Some("c"));
     }
 }

@@ -1,6 +1,6 @@
 //! CSV tables that a study names: a header, and rows that know their line.
 
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 
 use super::document::Document;
 use super::table::{Numbers, Said};
@@ -12,7 +12,7 @@ pub struct CsvTable {
     file: PathBuf,
     /// the names of the columns
     pub header: Vec<String>,
-    /// the rows below the header; blank lines are left out
+    /// the rows below the header; those without anything in them are left out
     pub rows: Vec<CsvRow>,
 }
 
@@ -32,7 +32,7 @@ impl CsvTable {
         let (file, bytes) = document.read_file(said)?;
         let bytes = bytes.strip_prefix("\u{feff}".as_bytes()).unwrap_or(&bytes);
         let mut mistakes = Vec::new();
-        let table = Self::parse(&file, bytes, &mut mistakes);
+        let table = Self::parse(file, bytes, &mut mistakes);
         let sound = mistakes.is_empty();
         for mistake in mistakes {
             document.mistake(mistake);
@@ -40,20 +40,23 @@ impl CsvTable {
         sound.then_some(table)
     }
 
-    fn parse(file: &Path, bytes: &[u8], mistakes: &mut Vec<Mistake>) -> Self {
+    fn parse(file: PathBuf, bytes: &[u8], mistakes: &mut Vec<Mistake>) -> Self {
+        let mut table = Self { file, header: Vec::new(), rows: Vec::new() };
+        let mut lines = Lines { bytes, offset: 0, line: 1 };
         let mut reader = csv::ReaderBuilder::new().flexible(true).trim(csv::Trim::All).from_reader(bytes);
-        let header: Vec<String> =
-            reader.headers().map(|names| names.iter().map(str::to_owned).collect()).unwrap_or_default();
-        if header.len() == 1 && header[0].contains(';') {
-            let mistake =
-                Mistake::new(Place::Row { file: file.into(), line: 1 }, &header[0], "columns parted by commas");
-            mistakes.push(mistake.advise("export the table as CSV with commas, not semicolons"));
+        match reader.headers() {
+            Ok(names) => table.header = names.iter().map(str::to_owned).collect(),
+            Err(_) => {
+                mistakes.push(Mistake::new(table.place(1), "a header that cannot be read", "CSV in UTF-8"));
+                return table;
+            }
         }
-        let mut table = Self { file: file.to_path_buf(), header, rows: Vec::new() };
+        mistakes.extend(table.header_mistake());
         for record in reader.records() {
             match record {
+                Ok(record) if record.iter().all(str::is_empty) => {}
                 Ok(record) => {
-                    let line = record.position().map_or(0, |position| usize::try_from(position.line()).unwrap_or(0));
+                    let line = lines.line_of(record.position());
                     let cells: Vec<String> = record.iter().map(str::to_owned).collect();
                     if cells.len() == table.header.len() {
                         table.rows.push(CsvRow { line, cells });
@@ -63,12 +66,28 @@ impl CsvTable {
                     }
                 }
                 Err(error) => {
-                    let line = error.position().map_or(1, |at| usize::try_from(at.line()).unwrap_or(1));
+                    let line = lines.line_of(error.position());
                     mistakes.push(Mistake::new(table.place(line), "a row that cannot be read", "CSV in UTF-8"));
                 }
             }
         }
         table
+    }
+
+    fn header_mistake(&self) -> Option<Mistake> {
+        if let [only] = self.header.as_slice()
+            && only.contains([';', '\t'])
+        {
+            let mistake = Mistake::new(self.place(1), only, "columns parted by commas");
+            return Some(mistake.advise("export the table as CSV with commas, not semicolons or tabs"));
+        }
+        let is_repeated =
+            |(position, name): (usize, &String)| !name.is_empty() && self.header[..position].contains(name);
+        self.header.iter().enumerate().any(is_repeated).then(|| {
+            let found = format!("header {}", self.header.join(","));
+            Mistake::new(self.place(1), found, "each column once")
+                .advise("rename or take out the column that is there twice")
+        })
     }
 
     /// The place of a line of this table.
@@ -106,5 +125,32 @@ impl CsvTable {
             refuse(Mistake::new(self.place(row.line), found, numbers.to_string()));
         }
         number
+    }
+}
+
+/// Counts lines as an editor does. The positions of the CSV reader do not serve: they stand before the line feed of the
+/// row above and before the blank lines between.
+struct Lines<'a> {
+    bytes: &'a [u8],
+    offset: usize,
+    line: usize,
+}
+
+impl Lines<'_> {
+    /// The line on which the row that starts at `position` has its first cell. Positions must not go back.
+    fn line_of(&mut self, position: Option<&csv::Position>) -> usize {
+        let start = position.and_then(|position| usize::try_from(position.byte()).ok()).unwrap_or(self.offset);
+        while let Some(byte) = self.bytes.get(self.offset)
+            && (self.offset < start || matches!(byte, b'\r' | b'\n'))
+        {
+            self.offset += 1;
+            let is_line_end = match byte {
+                b'\n' => true,
+                b'\r' => self.bytes.get(self.offset) != Some(&b'\n'),
+                _ => false,
+            };
+            self.line += usize::from(is_line_end);
+        }
+        self.line
     }
 }

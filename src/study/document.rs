@@ -24,7 +24,10 @@ pub struct Input {
 pub struct Document {
     file: PathBuf,
     text: String,
+    /// where each line of the text begins, in bytes; the first after a byte order mark
+    line_starts: Vec<usize>,
     root: Vec<Entry>,
+    has_faults: bool,
     mistakes: RefCell<Vec<Mistake>>,
     warnings: RefCell<Vec<Mistake>>,
     inputs: RefCell<Vec<Input>>,
@@ -52,6 +55,8 @@ pub(super) enum Value {
     Date,
     List(Vec<Node>),
     Table(Vec<Entry>),
+    /// the TOML is at fault here, and the mistake has been noted
+    Faulty,
 }
 
 impl Document {
@@ -67,8 +72,8 @@ impl Document {
             _ => Failure::system(file, "read", error),
         })?;
         let text = String::from_utf8(bytes).map_err(|error| {
-            let line = 1 + error.as_bytes()[..error.utf8_error().valid_up_to()].iter().filter(|b| **b == b'\n').count();
-            let place = Place::Text { file: file.to_path_buf(), line, column: 1 };
+            let sound = String::from_utf8_lossy(&error.as_bytes()[..error.utf8_error().valid_up_to()]);
+            let place = place(file, &sound, &line_starts(&sound), sound.len());
             Mistake::new(place, "bytes that are not UTF-8", "a text file").advise("save the study as UTF-8 text")
         })?;
         Ok(Self::parse(file, text))
@@ -77,22 +82,23 @@ impl Document {
     /// Parses the text of a study; `file` is the name that mistakes show and that relative paths start from.
     pub fn parse(file: &Path, text: String) -> Self {
         let (table, faults) = DeTable::parse_recoverable(&text);
-        let root = entries(table.get_ref());
+        let mut fault_starts: Vec<usize> = faults.iter().map(start_of).collect();
+        fault_starts.sort_unstable();
+        let root = entries(table.get_ref(), &fault_starts);
         let name = file.file_name().map(|name| name.to_string_lossy().into_owned()).unwrap_or_default();
         let study = Input { path: name, sha256: sha256(text.as_bytes()) };
         let document = Self {
             file: file.to_path_buf(),
+            line_starts: line_starts(&text),
             text,
             root,
+            has_faults: !faults.is_empty(),
             mistakes: RefCell::default(),
             warnings: RefCell::default(),
             inputs: RefCell::new(vec![study]),
         };
         for fault in faults {
-            let span = fault.span().unwrap_or(0..0);
-            let place = document.place(span.start);
-            let line = document.text.lines().nth(line_of(&place) - 1).unwrap_or_default().trim().to_owned();
-            document.mistake(Mistake::new(place, line, format!("TOML: {}", fault.message())));
+            document.mistake(document.fault(&fault));
         }
         document
     }
@@ -166,50 +172,82 @@ impl Document {
         Ok(self.warnings.borrow().clone())
     }
 
-    pub(super) fn place(&self, offset: usize) -> Place {
-        let before = &self.text[..self.text.floor_char_boundary(offset)];
-        let line = before.matches('\n').count() + 1;
-        let column = before.rsplit('\n').next().map_or(0, |last| last.chars().count()) + 1;
-        Place::Text { file: self.file.clone(), line, column }
+    /// Whether the TOML is at fault somewhere, so that keys may be there that the parser did not reach.
+    pub(super) fn has_faults(&self) -> bool {
+        self.has_faults
     }
 
+    pub(super) fn place(&self, offset: usize) -> Place {
+        place(&self.file, &self.text, &self.line_starts, offset)
+    }
+
+    /// The words at `span` as a message shows them: one line, not too long, without control characters.
     pub(super) fn words(&self, span: &Range<usize>) -> String {
-        let whole = self.text.get(span.clone()).unwrap_or_default();
-        let first = whole.lines().next().unwrap_or_default().trim();
-        if whole.lines().count() > 1 || first.chars().count() > 60 {
-            format!("{} ...", first.chars().take(60).collect::<String>().trim_end())
-        } else {
-            first.to_owned()
+        let whole = self.text.get(span.clone()).unwrap_or_default().trim();
+        let line = whole.lines().next().unwrap_or_default();
+        let shown: String = line.chars().take(60).map(|c| if c.is_control() { ' ' } else { c }).collect();
+        if shown.len() < whole.len() { format!("{} ...", shown.trim_end()) } else { shown }
+    }
+
+    fn fault(&self, fault: &toml::de::Error) -> Mistake {
+        let start = self.text.floor_char_boundary(start_of(fault));
+        let line_start = self.text[..start].rfind('\n').map_or(0, |newline| newline + 1);
+        let line_end = self.text[start..].find('\n').map_or(self.text.len(), |length| start + length);
+        let found = match self.words(&(line_start..line_end)) {
+            nothing if nothing.is_empty() && line_end == self.text.len() => "the end of the file".to_owned(),
+            nothing if nothing.is_empty() => "an empty line".to_owned(),
+            words => words,
+        };
+        match fault.message() {
+            "duplicate key" => {
+                Mistake::new(self.place(start), found, "each key once in its table").advise("take one of the two out")
+            }
+            message => Mistake::new(self.place(start), found, format!("TOML: {message}")),
         }
     }
+}
+
+fn start_of(fault: &toml::de::Error) -> usize {
+    fault.span().map_or(0, |span| span.start)
+}
+
+fn place(file: &Path, text: &str, line_starts: &[usize], offset: usize) -> Place {
+    let offset = text.floor_char_boundary(offset);
+    let line = line_starts.partition_point(|start| *start <= offset).max(1);
+    let before = text.get(line_starts[line - 1]..offset).unwrap_or_default();
+    Place::Text { file: file.to_path_buf(), line, column: before.chars().count() + 1 }
+}
+
+fn line_starts(text: &str) -> Vec<usize> {
+    let first = if text.starts_with('\u{feff}') { '\u{feff}'.len_utf8() } else { 0 };
+    std::iter::once(first).chain(text.match_indices('\n').map(|(at, _)| at + 1)).collect()
 }
 
 fn sha256(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
-fn line_of(place: &Place) -> usize {
-    match place {
-        Place::Text { line, .. } | Place::Row { line, .. } => *line,
-        _ => 1,
-    }
-}
-
-/// The entries of a TOML table in the order in which the file has them.
-fn entries(table: &DeTable<'_>) -> Vec<Entry> {
+/// The entries of a TOML table in the order in which the file has them. `fault_starts` say where the TOML is at fault, in
+/// order: what the parser put there in place of a key or value is nothing that the user wrote.
+fn entries(table: &DeTable<'_>, fault_starts: &[usize]) -> Vec<Entry> {
     let mut entries: Vec<Entry> = table
         .iter()
+        .filter(|(key, _)| fault_starts.is_empty() || !key.span().is_empty())
         .map(|(key, value)| Entry {
             key: key.get_ref().to_string(),
             key_span: key.span(),
-            node: node(value.get_ref(), value.span()),
+            node: node(value.get_ref(), value.span(), fault_starts),
         })
         .collect();
     entries.sort_by_key(|entry| entry.key_span.start);
     entries
 }
 
-fn node(value: &DeValue<'_>, span: Range<usize>) -> Node {
+fn node(value: &DeValue<'_>, span: Range<usize>, fault_starts: &[usize]) -> Node {
+    let next_fault = fault_starts.get(fault_starts.partition_point(|start| *start < span.start));
+    if !fault_starts.is_empty() && (span.is_empty() || next_fault.is_some_and(|start| *start <= span.end)) {
+        return Node { span, value: Value::Faulty };
+    }
     let value = match value {
         DeValue::String(text) => Value::Text(text.to_string()),
         // A number too large for its type is read as infinite, which every check of a range then refuses in words.
@@ -220,8 +258,10 @@ fn node(value: &DeValue<'_>, span: Range<usize>) -> Node {
         DeValue::Float(digits) => Value::Number(digits.as_str().parse().unwrap_or(f64::NAN)),
         DeValue::Boolean(flag) => Value::Flag(*flag),
         DeValue::Datetime(_) => Value::Date,
-        DeValue::Array(items) => Value::List(items.iter().map(|item| node(item.get_ref(), item.span())).collect()),
-        DeValue::Table(table) => Value::Table(entries(table)),
+        DeValue::Array(items) => {
+            Value::List(items.iter().map(|item| node(item.get_ref(), item.span(), fault_starts)).collect())
+        }
+        DeValue::Table(table) => Value::Table(entries(table, fault_starts)),
     };
     Node { span, value }
 }

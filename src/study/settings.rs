@@ -1,7 +1,7 @@
 //! The top of the study file: what belongs to no room.
 
 use super::table::{Numbers, POSITIVE, Said, Table};
-use crate::mistake::Mistake;
+use crate::mistake::{Mistake, nearest_word};
 
 /// The largest horizon, in years, and the largest number of replicates.
 const MOST: u64 = 10_000_000;
@@ -77,10 +77,10 @@ fn read_effort(root: &Table<'_>) -> Option<Effort> {
     let precision = root.number("precision", half_width);
     match (root.has("replicates"), root.has("precision")) {
         (true, true) => {
-            if let Some(said) = replicates.as_ref() {
-                root.document().mistake(
-                    said.mistake("either replicates or precision, not both").advise("take one of the two out"),
-                );
+            const EITHER: &str = "either replicates or precision, not both";
+            let clash = replicates.map(|said| said.mistake(EITHER)).or(precision.map(|said| said.mistake(EITHER)));
+            if let Some(mistake) = clash {
+                root.document().mistake(mistake.advise("take one of the two out"));
             }
             None
         }
@@ -102,9 +102,15 @@ fn read_quasi_extinction(root: &Table<'_>) -> Option<QuasiExtinction> {
             if !table.has("below") {
                 table.missing("below", "the threshold, in individuals of the whole network");
             }
-            let stages = table.texts("stages").unwrap_or_default();
+            let stages = table.texts("stages");
+            if stages.as_ref().is_some_and(Vec::is_empty) {
+                table.mistake(
+                    format!("{} = []", table.address("stages")),
+                    "at least one stage; leave the key out to count all",
+                );
+            }
             table.finish();
-            Some(QuasiExtinction { below: u32::try_from(below?.value).ok()?, stages })
+            Some(QuasiExtinction { below: u32::try_from(below?.value).ok()?, stages: stages.unwrap_or_default() })
         }
         super::table::Item::Number(_) => {
             let below = root.whole(KEY, 1, most)?;
@@ -123,14 +129,24 @@ fn read_quasi_extinction(root: &Table<'_>) -> Option<QuasiExtinction> {
 impl Settings {
     /// Checks that the stages named under `quasi_extinction` are among `stages`, and says which positions they have;
     /// empty means that all are counted.
+    ///
+    /// # Errors
+    /// A mistake for each name that is not among `stages` or stands there twice.
     pub fn counted_stages(&self, stages: &[&str]) -> Result<Vec<usize>, Vec<Mistake>> {
         let Some(threshold) = &self.quasi_extinction else { return Ok(Vec::new()) };
         let mut positions = Vec::new();
         let mut mistakes = Vec::new();
         for said in &threshold.stages {
             match stages.iter().position(|stage| *stage == said.value) {
+                Some(position) if positions.contains(&position) => mistakes.push(said.mistake("each stage once")),
                 Some(position) => positions.push(position),
-                None => mistakes.push(said.mistake(format!("stages of the life history: {}", stages.join(", ")))),
+                None => {
+                    let mistake = said.mistake(format!("stages of the life history: {}", stages.join(", ")));
+                    mistakes.push(match nearest_word(&said.value, stages.iter().copied()) {
+                        Some(near) => mistake.advise(format!("write \"{near}\"")),
+                        None => mistake,
+                    });
+                }
             }
         }
         if mistakes.is_empty() { Ok(positions) } else { Err(mistakes) }

@@ -60,18 +60,20 @@ impl Numbers {
     pub fn admit(&self, x: f64) -> bool {
         let low_enough = if self.below_high { x < self.high } else { x <= self.high };
         let high_enough = if self.above_low { x > self.low } else { x >= self.low };
-        low_enough && high_enough
+        x.is_finite() && low_enough && high_enough
     }
 }
 
 impl fmt::Display for Numbers {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let low = if self.above_low { format!("above {}", self.low) } else { format!("{} or above", self.low) };
-        match (self.high < f64::MAX, self.above_low || self.below_high) {
-            (false, _) => write!(f, "a number {low}"),
-            (true, false) => write!(f, "a number from {} to {}", self.low, self.high),
-            (true, true) if self.below_high => write!(f, "a number {low} and below {}", self.high),
-            (true, true) => write!(f, "a number {low}, at most {}", self.high),
+        let high = if self.below_high { format!("below {}", self.high) } else { format!("at most {}", self.high) };
+        match (self.low > f64::MIN, self.high < f64::MAX) {
+            (false, false) => write!(f, "a number"),
+            (true, false) => write!(f, "a number {low}"),
+            (false, true) => write!(f, "a number {high}"),
+            (true, true) if self.above_low || self.below_high => write!(f, "a number {low} and {high}"),
+            (true, true) => write!(f, "a number from {} to {}", self.low, self.high),
         }
     }
 }
@@ -140,7 +142,7 @@ impl<'d> Table<'d> {
     }
 
     /// Gives the table a name of the study's own in place of its position, so that addresses read
-    /// `life_history.juvenile` and not `life_history.stage.0`.
+    /// `life_history.juvenile` and not `life_history.stage.1`.
     pub fn rename(&mut self, path: String) {
         self.path = path;
     }
@@ -155,8 +157,11 @@ impl<'d> Table<'d> {
         self.find(key).is_some()
     }
 
-    /// Notes that a key is missing.
+    /// Notes that a key is missing; not so where the TOML is at fault, for the fault may hide the key.
     pub fn missing(&self, key: &str, expected: impl Into<String>) {
+        if self.document.has_faults() {
+            return;
+        }
         let found = format!("{} is missing", self.address(key));
         self.document.mistake(Mistake::new(self.place.clone(), found, expected));
     }
@@ -166,10 +171,10 @@ impl<'d> Table<'d> {
         self.document.mistake(Mistake::new(self.place.clone(), found, expected));
     }
 
-    /// Any value.
+    /// Any value; `None` also where the TOML is at fault, which has been noted.
     pub fn item(&self, key: &str) -> Option<Item<'d>> {
         let entry = self.find(key)?;
-        Some(self.item_of(&entry.node, self.address(key), self.document.place(entry.key_span.start)))
+        self.item_of(&entry.node, self.address(key), self.document.place(entry.key_span.start))
     }
 
     /// A string.
@@ -198,27 +203,28 @@ impl<'d> Table<'d> {
     pub fn number_of(&self, item: &Item<'_>, numbers: Numbers) -> Option<Said<f64>> {
         match item {
             Item::Number(said) if numbers.admit(said.value) => Some(said.clone()),
+            Item::Number(said) if said.value.is_infinite() => {
+                self.refuse(item, &format!("{numbers}, and not too large to hold"))
+            }
             other => self.refuse(other, &numbers.to_string()),
         }
     }
 
-    /// A whole number from `low` to `high`.
+    /// A whole number from `low` to `high`, at most the largest of TOML, 2^63 - 1.
     pub fn whole(&self, key: &str, low: u64, high: u64) -> Option<Said<u64>> {
-        let expected = if high >= i64::MAX as u64 {
-            format!("a whole number, {low} or above")
-        } else {
-            format!("a whole number from {low} to {high}")
-        };
-        let entry = self.find(key)?;
-        if let Value::Whole(value) = entry.node.value
-            && let Ok(value) = u64::try_from(value)
-            && (low..=high).contains(&value)
-        {
-            let said = self.said(value, &entry.node, &self.address(key), self.document.place(entry.key_span.start));
-            return Some(said);
-        }
+        const LARGEST: u64 = i64::MAX as u64;
         let item = self.item(key)?;
-        self.refuse(&item, &expected)
+        let whole = match self.find(key)?.node.value {
+            Value::Whole(whole) => u64::try_from(whole).ok().filter(|whole| (low..=high).contains(whole)),
+            _ => None,
+        };
+        match (item, whole) {
+            (Item::Number(said), Some(whole)) => Some(said.map(|_| whole)),
+            (item, _) if high < LARGEST || matches!(&item, Item::Number(said) if said.value.is_infinite()) => {
+                self.refuse(&item, &format!("a whole number from {low} to {}", high.min(LARGEST)))
+            }
+            (item, _) => self.refuse(&item, &format!("a whole number, {low} or above")),
+        }
     }
 
     /// A list of numbers, each among `numbers`.
@@ -335,7 +341,7 @@ impl<'d> Table<'d> {
             let words = known.iter().map(String::as_str).filter(|word| *word != "origin");
             let mut mistake = Mistake::new(
                 self.document.place(entry.key_span.start),
-                format!("{} is not a key", self.address(&entry.key)),
+                format!("{} is not a key", self.address(&self.document.words(&entry.key_span))),
                 one_of_keys(words.clone()),
             );
             if let Some(near) = nearest_word(&entry.key, words) {
@@ -359,8 +365,9 @@ impl<'d> Table<'d> {
         Said { value, place, words: format!("{path} = {}", self.document.words(&node.span)) }
     }
 
-    fn item_of(&self, node: &'d Node, path: String, place: Place) -> Item<'d> {
-        match &node.value {
+    fn item_of(&self, node: &'d Node, path: String, place: Place) -> Option<Item<'d>> {
+        Some(match &node.value {
+            Value::Faulty => return None,
             Value::Text(text) => Item::Text(self.said(text.clone(), node, &path, place)),
             Value::Number(number) => Item::Number(self.said(*number, node, &path, place)),
             #[expect(clippy::cast_precision_loss, reason = "counts and seeds are read as whole numbers instead")]
@@ -369,17 +376,14 @@ impl<'d> Table<'d> {
             Value::Date => Item::Date(self.said((), node, &path, place)),
             Value::Table(entries) => Item::Table(Table::new(self.document, path, entries, place)),
             Value::List(nodes) => {
-                let items = nodes
-                    .iter()
-                    .enumerate()
-                    .map(|(position, node)| {
-                        let place = self.document.place(node.span.start);
-                        self.item_of(node, format!("{path}.{}", position + 1), place)
-                    })
-                    .collect();
+                let item = |(position, node): (usize, &'d Node)| {
+                    let place = self.document.place(node.span.start);
+                    self.item_of(node, format!("{path}.{}", position + 1), place)
+                };
+                let items = nodes.iter().enumerate().filter_map(item).collect();
                 Item::List(self.said(items, node, &path, place))
             }
-        }
+        })
     }
 }
 
