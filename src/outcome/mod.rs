@@ -4,12 +4,16 @@
 //! replicates ran. Estimates from replicates leave as [`Estimate`]s, with their 95 % Monte Carlo interval.
 
 mod curve;
+#[cfg(test)]
+pub(crate) mod example;
 mod interval;
 mod links;
 mod patches;
 mod replicates;
 mod standard;
 mod summary;
+#[cfg(test)]
+mod tests;
 
 pub use curve::{QUANTILES, YearRow};
 pub use interval::{Estimate, Sums, Z, replicates_needed};

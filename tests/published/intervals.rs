@@ -1,5 +1,7 @@
 //! Intervals, sample statistics and quantiles against published values.
 
+#![expect(clippy::float_cmp, reason = "ends that must be met exactly")]
+
 use eyot::num::{pow, quantile};
 use eyot::outcome::{Estimate, Sums, replicates_needed};
 
