@@ -4,6 +4,10 @@
 //! bits. Everything here goes through `libm`, whose Rust source is the same everywhere, so that one study gives one
 //! answer wherever it is run.
 
+mod quantile;
+
+pub use quantile::quantile;
+
 /// e to the power `x`.
 pub fn exp(x: f64) -> f64 {
     libm::exp(x)

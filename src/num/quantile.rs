@@ -1,33 +1,41 @@
 //! Quantiles of a sample.
 
-/// The `p` quantile of a sample in rising order, of type 7 (Hyndman & Fan 1996, Am. Stat. 50): linear between the order
-/// statistics, the least at p = 0 and the greatest at p = 1. `None` for an empty sample or `p` outside 0 to 1.
-pub fn of_sorted(sorted: &[f64], p: f64) -> Option<f64> {
-    if !(0.0..=1.0).contains(&p) {
-        return None;
-    }
-    let last = sorted.len().checked_sub(1)?;
-    let position = last as f64 * p;
-    let below = position.floor() as usize;
-    let low = sorted[below];
-    let high = sorted[(below + 1).min(last)];
-    Some(low + (position - position.floor()) * (high - low))
+/// The `p` quantile of a sample in ascending order, type 7 of Hyndman & Fan 1996 (American Statistician 50): linear
+/// between the order statistics, the smallest at `p = 0` and the largest at `p = 1`.
+///
+/// `p` outside [0, 1] counts as the nearer end. NaN for an empty sample.
+pub fn quantile(sorted: &[f64], p: f64) -> f64 {
+    let Some(last) = sorted.len().checked_sub(1) else { return f64::NAN };
+    let position = p.clamp(0.0, 1.0) * last as f64;
+    let below = (position as usize).min(last);
+    let above = (below + 1).min(last);
+    let share = position - below as f64;
+    // Rounding must not carry the result past the upper neighbour, or quantiles would cross.
+    (sorted[below] + share * (sorted[above] - sorted[below])).min(sorted[above])
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
+    use proptest::prelude::*;
 
-    /// Recomputed independently: 5, 25, 50, 75 and 95 % of 3 1 4 1 5 9 2 6 5 3.
     #[test]
-    fn type_7_as_hyndman_and_fan_have_it() {
-        let sorted = [1.0, 1.0, 2.0, 3.0, 3.0, 4.0, 5.0, 5.0, 6.0, 9.0];
-        for (p, expected) in [(0.05, 1.0), (0.25, 2.25), (0.5, 3.5), (0.75, 5.0), (0.95, 7.65)] {
-            assert!((of_sorted(&sorted, p).unwrap() - expected).abs() < 1e-12);
+    #[expect(clippy::float_cmp, reason = "values that binary fractions hold exactly")]
+    fn ends_middle_and_nothing() {
+        assert_eq!([0.0, 0.5, 1.0].map(|p| quantile(&[1.0, 2.0, 4.0, 9.0], p)), [1.0, 3.0, 9.0]);
+        assert_eq!(quantile(&[7.0], 0.3), 7.0);
+        assert!(quantile(&[], 0.5).is_nan());
+    }
+
+    proptest! {
+        #[test]
+        fn quantiles_rise_with_p_and_stay_within_the_sample(
+            mut sample in prop::collection::vec(-1e9..1e9f64, 1..40), p in 0.0..=1.0f64, q in 0.0..=1.0f64,
+        ) {
+            sample.sort_unstable_by(f64::total_cmp);
+            let (low, high) = (quantile(&sample, p.min(q)), quantile(&sample, p.max(q)));
+            prop_assert!(low <= high);
+            prop_assert!(sample[0] <= low && high <= sample[sample.len() - 1]);
         }
-        assert_eq!(of_sorted(&sorted, 1.0), Some(9.0));
-        assert_eq!(of_sorted(&[2.0], 0.3), Some(2.0));
-        assert_eq!(of_sorted(&[], 0.3), None);
-        assert_eq!(of_sorted(&sorted, f64::NAN), None);
     }
 }
