@@ -12,7 +12,7 @@ use divan::Bencher;
 use divan::counter::ItemsCount;
 use eyot::engine::{Overrides, Prepared, Stopping, prepare, run};
 use eyot::num;
-use eyot::random::{Purpose, ReplicateKey, binomial, patch_key, poisson, standard_normal, thin};
+use eyot::random::{Purpose, ReplicateKey, binomial, patch_key, poisson, remove_at_random, standard_normal};
 
 const YEARS: u32 = 100;
 
@@ -144,21 +144,21 @@ fn bare_draws(bencher: Bencher<'_, '_>, n: usize) {
                 let year = replicate.year(year);
                 for key in &keys {
                     let place = year.patch(*key);
-                    let z = standard_normal(&mut place.draw(Purpose::weather(0)));
+                    let z = standard_normal(&mut place.draw(Purpose::Weather(0)));
                     black_box(z);
                     for (stage, (count, survival)) in [(24, 0.40), (10, 0.65), (16, 0.80)].into_iter().enumerate() {
-                        black_box(binomial(&mut place.draw(Purpose::survival(stage)), black_box(count), survival));
+                        black_box(binomial(&mut place.draw(Purpose::Fates(stage as u32)), black_box(count), survival));
                     }
-                    black_box(binomial(&mut place.draw(Purpose::fate(0)), black_box(10), 0.7));
-                    black_box(binomial(&mut place.draw(Purpose::fate(1)), black_box(6), 0.5));
-                    black_box(poisson(&mut place.draw(Purpose::young(0)), black_box(27.0)));
-                    let leaving = binomial(&mut place.draw(Purpose::emigration(0)), black_box(32), 0.1);
-                    let mut stream = place.draw(Purpose::destination(0));
+                    black_box(binomial(&mut place.draw(Purpose::Advance(0)), black_box(10), 0.7));
+                    black_box(binomial(&mut place.draw(Purpose::Advance(1)), black_box(6), 0.5));
+                    black_box(poisson(&mut place.draw(Purpose::Young(0)), black_box(27.0)));
+                    let leaving = binomial(&mut place.draw(Purpose::Leaving(0)), black_box(32), 0.1);
+                    let mut stream = place.draw(Purpose::Destinations(0));
                     for _ in 0..leaving {
                         black_box(binomial(&mut stream, 1, 0.5));
                     }
                     let mut counts = [black_box(29), 10, 16];
-                    thin(&mut place.draw(Purpose::ceiling()), &mut counts, 5);
+                    remove_at_random(&mut place.draw(Purpose::Surplus), &mut counts, 5);
                     black_box(counts);
                 }
             }

@@ -47,6 +47,24 @@ impl Place {
     }
 }
 
+impl Place {
+    /// The same place with its file named as seen from `folder`, so that it reads alike wherever the folder lies. A file
+    /// outside of the folder keeps its name.
+    #[must_use]
+    pub fn seen_from(&self, folder: &Path) -> Self {
+        let mut place = self.clone();
+        match &mut place {
+            Self::Call => {}
+            Self::File(file) | Self::Text { file, .. } | Self::Feature { file, .. } | Self::Row { file, .. } => {
+                if let Ok(inside) = file.strip_prefix(folder) {
+                    *file = inside.to_path_buf();
+                }
+            }
+        }
+        place
+    }
+}
+
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         match self {

@@ -19,8 +19,8 @@ fn study(horizon: u32, density: &str) -> Prepared {
                 r#"{{"type":"Feature","properties":{{"patch":"p{i}","area":{},"k":{}}},"geometry":{{"type":"Point","coordinates":[{},{}]}}}}"#,
                 1 + i,
                 10 + 5 * i,
-                i * 700,
-                (i % 4) * 900
+                500_000 + i * 700,
+                500_000 + (i % 4) * 900
             )
         })
         .collect();

@@ -4,11 +4,12 @@ use std::path::PathBuf;
 
 use clap::Args;
 
-use super::{DONE, say};
+use super::{DONE, say, warn};
 use crate::engine::{Overrides, prepare};
 use crate::mistake::Failure;
+use crate::output::Understood;
 
-/// Reads everything, says what it understood, warns; no simulation.
+/// Read everything, say what was understood, and warn; no simulation.
 #[derive(Debug, Args)]
 #[command(after_help = "Example:\n  eyot check study.toml")]
 pub(super) struct Arguments {
@@ -23,5 +24,13 @@ pub(super) struct Arguments {
 }
 
 pub(super) fn main(arguments: &Arguments) -> Result<u8, Failure> {
-    todo!()
+    let checked = prepare(&arguments.study, Overrides::default())?;
+    let understood = Understood::new(&checked.value, &checked.warnings);
+    if arguments.json {
+        say(&understood.json());
+    } else if !arguments.quiet {
+        warn(&checked.warnings);
+        say(&understood.text());
+    }
+    Ok(DONE)
 }

@@ -16,5 +16,5 @@ mod year;
 pub use compile::start_counts;
 pub use model::{Model, Threshold};
 pub use prepare::{Overrides, Prepared, prepare};
-pub use run::{Progress, Run, run};
+pub use run::{Progress, Run, Stopping, run};
 pub use tally::{PatchTally, Record, Tallies};

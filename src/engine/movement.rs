@@ -3,7 +3,7 @@
 use super::replicate::State;
 use crate::demography::Stage;
 use crate::network::Network;
-use crate::random::{AliasTable, PlaceKey, Purpose, binomial};
+use crate::random::{AliasRows, PlaceKey, Purpose, binomial};
 
 /// The compiled dispersal matrix.
 #[derive(Debug)]
@@ -14,8 +14,8 @@ pub(super) struct Movement {
     row_start: Vec<usize>,
     /// target patch of each link
     targets: Vec<u32>,
-    /// one row a patch: the outcomes are its links in order, then being lost
-    destinations: AliasTable,
+    /// one row a patch, whose places are its links
+    destinations: AliasRows,
     /// probability of each link
     probabilities: Vec<f64>,
 }
@@ -36,13 +36,16 @@ impl Movement {
             return None;
         }
         let probabilities: Vec<f64> = network.links.iter().map(|link| link.probability).collect();
-        let rows = network.row_start.windows(2).map(|ends| &probabilities[ends[0]..ends[1]]);
+        let mut destinations = AliasRows::new();
+        for ends in network.row_start.windows(2) {
+            destinations.push(&probabilities[ends[0]..ends[1]]);
+        }
         Some(Self {
             movers,
             n_stages: stages.len(),
             row_start: network.row_start.clone(),
             targets: network.links.iter().map(|link| link.to).collect(),
-            destinations: AliasTable::new(rows),
+            destinations,
             probabilities,
         })
     }
@@ -58,7 +61,7 @@ impl Movement {
             if *count == 0 {
                 continue;
             }
-            let leaving = binomial(&mut place.draw(Purpose::emigration(stage)), *count, chance);
+            let leaving = binomial(&mut place.draw(Purpose::Leaving(stage as u32)), *count, chance);
             if leaving == 0 {
                 continue;
             }
@@ -72,13 +75,12 @@ impl Movement {
     fn spread(&self, state: &mut State, patch: usize, stage: usize, leaving: u32, place: PlaceKey) -> u32 {
         let (first, end) = (self.row_start[patch], self.row_start[patch + 1]);
         let targets = u32::try_from(end - first).unwrap_or(u32::MAX);
-        let mut stream = place.draw(Purpose::destination(stage));
+        let mut stream = place.draw(Purpose::Destinations(stage as u32));
         let mut arrived = 0;
         if leaving <= targets.saturating_mul(EMIGRANTS_PER_TARGET) {
             for _ in 0..leaving {
-                let outcome = self.destinations.draw(patch, &mut stream);
-                if let Some(link) = outcome.map(|position| first + position) {
-                    self.settle(state, link, stage, 1);
+                if let Some(link) = self.destinations.draw(&mut stream, patch) {
+                    self.settle(state, link as usize, stage, 1);
                     arrived += 1;
                 }
             }

@@ -178,7 +178,16 @@ fn link(document: &Document, landscape: &Landscape, dispersal: Option<&Dispersal
         None => Some(Network::unlinked(landscape.patches.len())),
         Some(table) => {
             let neighbours = Neighbours::new(landscape);
-            Network::build(table, landscape, &neighbours, document)
+            match Network::build(landscape, table, &|patch, km| neighbours.within(patch, km)) {
+                Ok(checked) => {
+                    checked.warnings.into_iter().for_each(|warning| document.warning(warning));
+                    Some(checked.value)
+                }
+                Err(mistakes) => {
+                    mistakes.into_vec().into_iter().for_each(|mistake| document.mistake(mistake));
+                    None
+                }
+            }
         }
     }
 }

@@ -3,7 +3,7 @@
 use super::model::Model;
 use super::replicate::State;
 use crate::demography::local::Pressure;
-use crate::random::{Purpose, YearKey, thin};
+use crate::random::{Purpose, YearKey, remove_at_random};
 
 /// Takes the state from census `year` to census `year + 1`.
 ///
@@ -97,8 +97,8 @@ fn remove_surplus(
     if total <= most {
         return;
     }
-    let mut stream = key.patch(model.patch_keys[patch]).draw(Purpose::ceiling());
-    thin(&mut stream, counted, total - most);
+    let mut stream = key.patch(model.patch_keys[patch]).draw(Purpose::Surplus);
+    remove_at_random(&mut stream, counted, total - most);
     for ((count, counted), weight) in counts.iter_mut().zip(counted).zip(&model.toward_capacity) {
         if *weight > 0.0 {
             *count = *counted;

@@ -132,5 +132,5 @@ pub(crate) fn threshold() -> QuasiExtinction {
 }
 
 pub(crate) fn outcome(threshold: Option<&QuasiExtinction>) -> Outcome {
-    Outcome::from_tallies(&tallies(), &landscape(), &network(), &STARTS, threshold).unwrap()
+    Outcome::from_tallies(&tallies(), &landscape(), &network(), &STARTS, threshold, None).unwrap()
 }

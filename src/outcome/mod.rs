@@ -18,14 +18,14 @@ mod tests;
 pub use curve::{QUANTILES, YearRow};
 pub use interval::{Estimate, Sums, Z, replicates_needed};
 pub use links::LinkRow;
-pub use patches::{PatchRow, ROLE_MARGIN, Role};
+pub use patches::{PatchRow, PlaceInNetwork, ROLE_MARGIN, Role};
 pub use replicates::ReplicateRow;
 pub use standard::{CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Standing};
 pub use summary::{Customary, Summary};
 
 use crate::engine::Tallies;
 use crate::landscape::Landscape;
-use crate::network::Network;
+use crate::network::{Network, Structure};
 use crate::study::QuasiExtinction;
 
 /// What one set of replicates says.
@@ -45,6 +45,8 @@ pub struct Outcome {
     pub by_link: Vec<LinkRow>,
     /// a row for every replicate that is done, at least one
     pub by_replicate: Vec<ReplicateRow>,
+    /// what holds the network together, where individuals disperse
+    pub structure: Option<Structure>,
 }
 
 impl Outcome {
@@ -58,6 +60,7 @@ impl Outcome {
         network: &Network,
         starts: &[u64],
         quasi_extinction: Option<&QuasiExtinction>,
+        structure: Option<Structure>,
     ) -> Option<Self> {
         if tallies.records.is_empty() {
             return None;
@@ -68,10 +71,11 @@ impl Outcome {
             horizon: tallies.horizon,
             quasi_extinction: quasi_extinction.cloned(),
             summary: Summary::new(tallies, &by_year, &by_replicate),
-            by_patch: patches::by_patch(tallies, landscape, starts),
-            by_link: links::by_link(tallies, network),
+            by_patch: patches::by_patch(tallies, landscape, starts, structure.as_ref()),
+            by_link: links::by_link(tallies, network, structure.as_ref()),
             by_year,
             by_replicate,
+            structure,
         })
     }
 

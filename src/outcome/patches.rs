@@ -3,6 +3,7 @@
 use super::interval::{Estimate, Sums};
 use crate::engine::{PatchTally, Tallies};
 use crate::landscape::{Landscape, Patch};
+use crate::network::Structure;
 
 /// How far from 0 the whole interval of net export, in individuals a year for each individual of the patch's mean
 /// abundance, must lie for a patch to be called a source or a sink.
@@ -72,15 +73,51 @@ pub struct PatchRow {
     pub net_export_per_year: Estimate,
     /// source, sink or neither
     pub role: Role,
+    /// what the patch is to the structure of the network, where individuals disperse
+    pub place: Option<PlaceInNetwork>,
+}
+
+/// What a patch is to the structure of the network.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct PlaceInNetwork {
+    /// the component that it belongs to, from 1
+    pub component: u32,
+    /// whether its loss splits that component
+    pub splits: bool,
+    /// its share of the metapopulation capacity
+    pub capacity_share: f64,
+    /// percentage of the probability of connectivity that goes with it; `None` in networks too large for it
+    pub connectivity_loss_percent: Option<f64>,
+}
+
+impl PlaceInNetwork {
+    fn new(structure: &Structure, patch: usize) -> Self {
+        Self {
+            component: structure.graph.component[patch] + 1,
+            splits: structure.graph.cut_patches.binary_search(&patch).is_ok(),
+            capacity_share: structure.capacity.shares[patch],
+            connectivity_loss_percent: structure.connectivity.loss_percent.as_ref().map(|losses| losses[patch]),
+        }
+    }
 }
 
 /// A row for every patch, in canonical order. At least one replicate is done; `starts` has a number for each patch.
-pub(super) fn by_patch(tallies: &Tallies, landscape: &Landscape, starts: &[u64]) -> Vec<PatchRow> {
+pub(super) fn by_patch(
+    tallies: &Tallies,
+    landscape: &Landscape,
+    starts: &[u64],
+    structure: Option<&Structure>,
+) -> Vec<PatchRow> {
     debug_assert_eq!(landscape.patches.len(), tallies.patches.len());
     debug_assert_eq!(landscape.patches.len(), starts.len());
     let effort = Effort { replicates: tallies.records.len() as u64, years: f64::from(tallies.horizon) };
     let patches = landscape.patches.iter().zip(&tallies.patches).zip(starts);
-    patches.map(|((patch, tally), start)| effort.row(patch, tally, *start)).collect()
+    let rows = patches.map(|((patch, tally), start)| effort.row(patch, tally, *start));
+    let placed = |(position, row): (usize, PatchRow)| PatchRow {
+        place: structure.map(|structure| PlaceInNetwork::new(structure, position)),
+        ..row
+    };
+    rows.enumerate().map(placed).collect()
 }
 
 /// What sums over replicates and years are divided by.
@@ -108,6 +145,7 @@ impl Effort {
             emigrants_per_year: self.yearly(tally.emigrants),
             net_export_per_year: net_export,
             role: Role::of(&net_export, mean_abundance.value),
+            place: None,
         }
     }
 

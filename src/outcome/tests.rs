@@ -80,14 +80,14 @@ fn movers_are_told_by_the_year() {
 #[test]
 fn nothing_done_says_nothing() {
     let none = Tallies { records: Vec::new(), ..tallies() };
-    assert_eq!(Outcome::from_tallies(&none, &landscape(), &network(), &STARTS, None), None);
+    assert_eq!(Outcome::from_tallies(&none, &landscape(), &network(), &STARTS, None, None), None);
 }
 
 #[test]
 fn the_order_of_replicates_changes_no_estimate() {
     let mut shuffled = tallies();
     shuffled.records.rotate_left(3);
-    let other = Outcome::from_tallies(&shuffled, &landscape(), &network(), &STARTS, None).unwrap();
+    let other = Outcome::from_tallies(&shuffled, &landscape(), &network(), &STARTS, None, None).unwrap();
     let outcome = outcome(None);
     assert_eq!(other.by_year, outcome.by_year);
     assert_eq!(other.summary, outcome.summary);
@@ -103,7 +103,7 @@ fn the_customary_target_is_read_at_a_hundred_years() {
         let empty_from = if position == 0 { 100 } else { 101 };
         record.totals[empty_from..].fill(0);
     }
-    let summary = Outcome::from_tallies(&long, &landscape(), &network(), &STARTS, None).unwrap().summary;
+    let summary = Outcome::from_tallies(&long, &landscape(), &network(), &STARTS, None, None).unwrap().summary;
     let customary = summary.customary.unwrap();
     assert_eq!(customary.persistence, Estimate::proportion(3, 4));
     assert_eq!(customary.standing, Standing::NotToldApart);

@@ -8,6 +8,7 @@ pub(super) enum Cell<'a> {
     Text(&'a str),
     Whole(u64),
     Number(f64),
+    Flag(bool),
     Empty,
 }
 
@@ -27,6 +28,12 @@ impl From<u64> for Cell<'_> {
 impl From<f64> for Cell<'_> {
     fn from(number: f64) -> Self {
         if number.is_finite() { Self::Number(number) } else { Self::Empty }
+    }
+}
+
+impl From<bool> for Cell<'_> {
+    fn from(flag: bool) -> Self {
+        Self::Flag(flag)
     }
 }
 
@@ -95,6 +102,10 @@ pub(super) const BY_PATCH: &[Column<PatchRow>] = &[
     column("mean_abundance_at_end_high", |_, row| row.mean_abundance_at_end.high.into()),
     column("net_export_per_year_low", |_, row| row.net_export_per_year.low.into()),
     column("net_export_per_year_high", |_, row| row.net_export_per_year.high.into()),
+    column("component", |_, row| row.place.map(|place| place.component).into()),
+    column("splits_network", |_, row| row.place.map(|place| place.splits).into()),
+    column("metapopulation_capacity_share", |_, row| row.place.map(|place| place.capacity_share).into()),
+    column("connectivity_loss_percent", |_, row| row.place.and_then(|place| place.connectivity_loss_percent).into()),
 ];
 
 pub(super) const BY_LINK: &[Column<LinkRow>] = &[
@@ -103,6 +114,7 @@ pub(super) const BY_LINK: &[Column<LinkRow>] = &[
     column("distance_km", |_, row| row.distance_km.into()),
     column("probability", |_, row| row.probability.into()),
     column("movers_per_year", |_, row| row.movers_per_year.into()),
+    column("splits_network", |_, row| row.splits.into()),
 ];
 
 pub(super) const BY_REPLICATE: &[Column<ReplicateRow>] = &[

@@ -59,6 +59,7 @@ fn spell(cell: Cell<'_>, text: &mut String) {
         Cell::Text(words) => text.write_str(words),
         Cell::Whole(number) => write!(text, "{number}"),
         Cell::Number(number) => write!(text, "{number}"),
+        Cell::Flag(flag) => write!(text, "{flag}"),
         Cell::Empty => Ok(()),
     };
     spelt.expect("a text in memory takes whatever is written to it");

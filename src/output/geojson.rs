@@ -65,6 +65,7 @@ fn properties<Row>(outcome: &Outcome, columns: &[Column<Row>], row: &Row) -> Jso
         Cell::Text(text) => text.into(),
         Cell::Whole(number) => number.into(),
         Cell::Number(number) => number.into(),
+        Cell::Flag(flag) => flag.into(),
         Cell::Empty => JsonValue::Null,
     };
     columns.iter().map(|column| (column.name.to_owned(), value((column.cell)(outcome, row)))).collect()

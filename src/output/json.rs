@@ -8,6 +8,7 @@ use serde::Serialize;
 use super::words::{CAUTIONS, answer};
 use super::{Account, files::RUN_FILES};
 use crate::mistake::Mistake;
+use crate::network;
 use crate::outcome::{
     CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Customary, Estimate, Outcome, ROLE_MARGIN, Standing, Summary,
 };
@@ -101,7 +102,7 @@ struct Target {
     standing: &'static str,
 }
 
-/// The network as is. What its graph looks like stands here too.
+/// The network as is.
 #[derive(Serialize)]
 struct Network {
     patches: usize,
@@ -109,6 +110,18 @@ struct Network {
     area_ha: f64,
     capacity: f64,
     start: u64,
+    structure: Option<Structure>,
+}
+
+/// What holds the network together. Capacity: Hanski & Ovaskainen 2000; connectivity: Saura & Pascual-Hortal 2007.
+#[derive(Serialize)]
+struct Structure {
+    components: usize,
+    patches_whose_loss_splits: Vec<String>,
+    links_whose_loss_splits: Vec<[String; 2]>,
+    metapopulation_capacity: f64,
+    probability_of_connectivity: f64,
+    equivalent_connected_area_ha: f64,
 }
 
 #[derive(Serialize)]
@@ -171,6 +184,24 @@ impl Network {
             area_ha: outcome.by_patch.iter().map(|row| row.area_ha).sum(),
             capacity: outcome.by_patch.iter().map(|row| row.capacity).sum(),
             start: outcome.by_patch.iter().map(|row| row.start).sum(),
+            structure: outcome.structure.as_ref().map(|structure| {
+                let name = |position: usize| outcome.by_patch[position].patch.clone();
+                Structure::new(structure, name)
+            }),
+        }
+    }
+}
+
+impl Structure {
+    fn new(structure: &network::Structure, name: impl Fn(usize) -> String) -> Self {
+        let connectivity = &structure.connectivity;
+        Self {
+            components: structure.graph.n_components,
+            patches_whose_loss_splits: structure.graph.cut_patches.iter().map(|patch| name(*patch)).collect(),
+            links_whose_loss_splits: structure.graph.cut_links.iter().map(|(a, b)| [name(*a), name(*b)]).collect(),
+            metapopulation_capacity: structure.capacity.value,
+            probability_of_connectivity: connectivity.probability,
+            equivalent_connected_area_ha: connectivity.equivalent_area_ha,
         }
     }
 }

@@ -119,7 +119,7 @@ fn a_single_replicate_leaves_the_bounds_of_means_empty() {
     one.records.truncate(1);
     one.patches.fill(PatchTally::default());
     let starts = crate::outcome::example::STARTS;
-    let outcome = Outcome::from_tallies(&one, &landscape(), &network(), &starts, None).unwrap();
+    let outcome = Outcome::from_tallies(&one, &landscape(), &network(), &starts, None, None).unwrap();
     let text = written(|to| csv::by_year(&outcome, to));
     assert!(!text.contains("inf") && !text.contains("NaN"), "{text}");
     let json: Value = serde_json::from_str(&written(|to| json::write(&outcome, &account(), to))).unwrap();

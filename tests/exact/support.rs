@@ -125,8 +125,8 @@ impl Case {
                     position + 1,
                     point.area_ha,
                     point.capacity,
-                    point.at_km[0] * 1000.0,
-                    point.at_km[1] * 1000.0
+                    500_000.0 + point.at_km[0] * 1000.0,
+                    500_000.0 + point.at_km[1] * 1000.0
                 )
             })
             .collect();

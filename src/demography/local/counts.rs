@@ -17,7 +17,7 @@ struct Counts;
 impl LocalModel for Counts {
     fn step(&self, counts: &mut [u32], rates: &[f64], pressure: Pressure, place: PlaceKey, _: &mut [u32]) -> bool {
         let mean = f64::from(counts[0]) * rates[0] * pressure.fecundity;
-        counts[0] = poisson(&mut place.draw(Purpose::young(0)), mean);
+        counts[0] = poisson(&mut place.draw(Purpose::Young(0)), mean);
         counts[0] == u32::MAX
     }
 

@@ -58,10 +58,10 @@ impl LocalModel for Stages {
                 continue;
             }
             let chance = survival[stage] * pressure.survival;
-            let mut left = binomial(&mut place.draw(Purpose::survival(stage)), count, chance);
+            let mut left = binomial(&mut place.draw(Purpose::Fates(stage as u32)), count, chance);
             let (last, others) = fates.shares.split_last().expect("a stage with survivors has a fate");
             if !others.is_empty() {
-                let mut stream = place.draw(Purpose::fate(stage));
+                let mut stream = place.draw(Purpose::Advance(stage as u32));
                 for (to, share) in others {
                     let moved = binomial(&mut stream, left, *share);
                     over |= add(&mut next[*to], moved);
@@ -89,14 +89,14 @@ impl Stages {
             // A sum of independent Poisson numbers is Poisson: one draw for all stages.
             Young::Poisson => {
                 let mean: f64 = counts.iter().zip(fecundity).map(|(count, rate)| f64::from(*count) * rate).sum();
-                poisson(&mut place.draw(Purpose::young(0)), mean * pressure)
+                poisson(&mut place.draw(Purpose::Young(0)), mean * pressure)
             }
             Young::AtMostOne => counts
                 .iter()
                 .zip(fecundity)
                 .enumerate()
                 .filter(|(_, (count, rate))| **count > 0 && **rate > 0.0)
-                .map(|(stage, (count, rate))| binomial(&mut place.draw(Purpose::young(stage)), *count, rate * pressure))
+                .map(|(stage, (count, rate))| binomial(&mut place.draw(Purpose::Young(stage as u32)), *count, rate * pressure))
                 .fold(0, u32::saturating_add),
         }
     }
