@@ -4,6 +4,12 @@
 //! bits. Everything here goes through `libm`, whose Rust source is the same everywhere, so that one study gives one
 //! answer wherever it is run.
 
+pub mod beta;
+pub mod gamma;
+pub mod normal;
+pub mod quantile;
+pub mod saddle;
+
 /// e to the power `x`.
 pub fn exp(x: f64) -> f64 {
     libm::exp(x)
