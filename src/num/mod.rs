@@ -4,7 +4,11 @@
 //! bits. Everything here goes through `libm`, whose Rust source is the same everywhere, so that one study gives one
 //! answer wherever it is run.
 
+pub mod beta;
+pub mod gamma;
+pub mod normal;
 mod quantile;
+pub mod saddle;
 
 pub use quantile::quantile;
 

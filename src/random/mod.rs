@@ -1,30 +1,27 @@
-//! TEMPORARY
-#![allow(missing_docs, clippy::all)]
-#[derive(Debug, Clone, Copy)]
-pub struct PlaceKey(u64);
-#[derive(Debug, Clone, Copy)]
-pub struct Purpose(u64);
-#[derive(Debug)]
-pub struct Stream(u64);
-impl Purpose {
-    pub fn young(stage: usize) -> Self {
-        Self(stage as u64)
-    }
-    pub fn survival(stage: usize) -> Self {
-        Self(100 + stage as u64)
-    }
-    pub fn fate(stage: usize) -> Self {
-        Self(200 + stage as u64)
-    }
-}
-impl PlaceKey {
-    pub fn draw(self, p: Purpose) -> Stream {
-        Stream(self.0 ^ p.0)
-    }
-}
-pub fn binomial(_: &mut Stream, n: u32, p: f64) -> u32 {
-    (f64::from(n) * p) as u32
-}
-pub fn poisson(_: &mut Stream, m: f64) -> u32 {
-    m as u32
-}
+//! Streams by identity, and samplers that are exact in distribution at every size.
+//!
+//! A draw is keyed by who asks for it, never by what was drawn before ([`streams`]). Samplers take any argument: a
+//! probability is clamped to 0 to 1, a mean to 0 and above, NaN counts as 0, and nothing panics. They stand on integer
+//! arithmetic, the four operations, square roots and [`crate::num`], so that they give the same numbers everywhere.
+//! A change in any number they give changes results, and is a change of version.
+
+mod alias;
+mod binomial;
+mod hypergeometric;
+mod multinomial;
+mod normal;
+mod poisson;
+mod poisson_table;
+mod purpose;
+pub mod streams;
+mod thinning;
+
+pub use alias::AliasRows;
+pub use binomial::binomial;
+pub use hypergeometric::hypergeometric;
+pub use multinomial::multinomial;
+pub use normal::standard_normal;
+pub use poisson::poisson;
+pub use purpose::Purpose;
+pub use streams::{PlaceKey, ReplicateKey, Stream, YearKey, patch_key};
+pub use thinning::remove_at_random;

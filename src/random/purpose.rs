@@ -1,0 +1,38 @@
+//! What a draw is for.
+
+/// What a draw is for, with the stage, rate group or action that it is for.
+///
+/// The numbers that [`Purpose::code`] gives are part of every result: a new purpose takes a new number, and none is ever
+/// given out again.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Purpose {
+    /// the weather of a rate group, shared with neighbours
+    Weather(u32),
+    /// the weather of a rate group that is a patch's own
+    OwnWeather(u32),
+    /// who of a stage survives, and advances
+    Fates(u32),
+    /// the young of a stage
+    Young(u32),
+    /// who of a stage leaves
+    Leaving(u32),
+    /// where those of a stage go who leave
+    Destinations(u32),
+    /// who goes where there are too many
+    Surplus,
+}
+
+impl Purpose {
+    pub(super) const fn code(self) -> u64 {
+        let (number, index): (u64, u32) = match self {
+            Self::Weather(group) => (1, group),
+            Self::OwnWeather(group) => (2, group),
+            Self::Fates(stage) => (3, stage),
+            Self::Young(stage) => (4, stage),
+            Self::Leaving(stage) => (5, stage),
+            Self::Destinations(stage) => (6, stage),
+            Self::Surplus => (7, 0),
+        };
+        number << 32 | index as u64
+    }
+}
