@@ -4,6 +4,12 @@
 //! bits. Everything here goes through `libm`, whose Rust source is the same everywhere, so that one study gives one
 //! answer wherever it is run.
 
+mod gamma;
+mod normal;
+
+pub use gamma::gamma_q;
+pub use normal::normal_cdf;
+
 /// e to the power `x`.
 pub fn exp(x: f64) -> f64 {
     libm::exp(x)
