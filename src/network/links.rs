@@ -25,3 +25,15 @@ pub struct Network {
     /// per patch: share of those who land that the tail's cut took away, before mortality
     pub cut_share: Vec<f64>,
 }
+
+impl Network {
+    /// The links out of a patch.
+    pub fn row(&self, patch: usize) -> &[Link] {
+        &self.links[self.row_start[patch]..self.row_start[patch + 1]]
+    }
+
+    /// Number of patches.
+    pub fn n_patches(&self) -> usize {
+        self.lost.len()
+    }
+}

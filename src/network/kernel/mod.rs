@@ -198,7 +198,8 @@ mod tests {
 
     #[test]
     fn every_kind_is_read_to_its_mean_and_to_its_median() {
-        for keys in ["'exponential'", "'gaussian'", "'exponential-power', c = 0.5", "'2Dt', b = 2.5", "'lognormal', s = 0.8"]
+        for keys in
+            ["'exponential'", "'gaussian'", "'exponential-power', c = 0.5", "'2Dt', b = 2.5", "'lognormal', s = 0.8"]
         {
             let (kernel, mistakes) = read(&format!("kernel = {{ mean_km = 2.5, shape = {keys} }}"));
             assert_eq!(mistakes, [""; 0]);
