@@ -25,3 +25,25 @@ pub struct Network {
     /// per patch: share of those who land that the tail's cut took away, before mortality
     pub cut_share: Vec<f64>,
 }
+
+impl Network {
+    /// No links: whoever leaves is lost.
+    pub fn unlinked(n_patches: usize) -> Self {
+        Self {
+            links: Vec::new(),
+            row_start: vec![0; n_patches + 1],
+            lost: vec![1.0; n_patches],
+            cut_share: vec![0.0; n_patches],
+        }
+    }
+
+    /// The links out of a patch.
+    pub fn row(&self, patch: usize) -> &[Link] {
+        &self.links[self.row_start[patch]..self.row_start[patch + 1]]
+    }
+
+    /// Number of patches.
+    pub fn n_patches(&self) -> usize {
+        self.lost.len()
+    }
+}

@@ -12,6 +12,8 @@ pub enum Purpose {
     OwnWeather(u32),
     /// who of a stage survives, and advances
     Fates(u32),
+    /// which of its fates each survivor of a stage meets
+    Advance(u32),
     /// the young of a stage
     Young(u32),
     /// who of a stage leaves
@@ -32,6 +34,7 @@ impl Purpose {
             Self::Leaving(stage) => (5, stage),
             Self::Destinations(stage) => (6, stage),
             Self::Surplus => (7, 0),
+            Self::Advance(stage) => (8, stage),
         };
         number << 32 | index as u64
     }

@@ -1,0 +1,135 @@
+//! The table `[dispersal]` of a study.
+
+use super::kernel::Kernel;
+use super::measured::Measured;
+use crate::mistake::Place;
+use crate::study::{Item, NOT_NEGATIVE, Numbers, POSITIVE, Table};
+
+/// Share of those who land that the weakest links may lose, unless the study says otherwise.
+const TAIL: f64 = 1e-4;
+
+/// Where emigrants settle.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Settlement {
+    /// every emigrant heads for one of the patches: they share it between them
+    Shared,
+    /// emigrants land where the kernel takes them, and are lost outside the patches
+    Open,
+}
+
+/// How a kernel becomes a dispersal matrix.
+#[derive(Debug, Clone)]
+pub struct KernelDispersal {
+    /// the kernel
+    pub kernel: Kernel,
+    /// where emigrants settle
+    pub settlement: Settlement,
+    /// rate of dying per km of the way
+    pub path_mortality_per_km: f64,
+    /// distance in km beyond which nobody goes
+    pub max_km: Option<f64>,
+    /// share of those who land that the weakest links of a patch may be cut by, from 0 to below 1
+    pub tail: f64,
+}
+
+/// What moves emigrants between patches.
+#[derive(Debug, Clone)]
+pub enum Movement {
+    /// a kernel over the distances of the landscape
+    Kernel(KernelDispersal),
+    /// a measured table of probabilities
+    Measured(Measured),
+}
+
+/// The table `[dispersal]` of a study, read and checked.
+#[derive(Debug, Clone)]
+pub struct DispersalTable {
+    /// a kernel or a measured table
+    pub movement: Movement,
+    /// exponent b of the area in a target's weight A^b
+    pub area_exponent: f64,
+    /// where the table stands in the study
+    pub place: Place,
+}
+
+impl DispersalTable {
+    /// Reads the table. Mistakes are noted in the document; `None` if a value without which nothing can go on is missing
+    /// or wrong.
+    pub fn read(table: Table<'_>) -> Option<Self> {
+        let place = table.place().clone();
+        let area_exponent = or(&table, "area_exponent", NOT_NEGATIVE, 1.0);
+        if !table.has("kernel") {
+            table.missing(
+                "kernel",
+                "{ shape = \"exponential\", mean_km = 1.4 } or the like, or { table = \"file.csv\" }",
+            );
+        }
+        let keys = table.table("kernel")?;
+        let movement = if keys.has("table") { read_measured(&table, keys) } else { read_kernel(&table, keys) };
+        warn_of_an_idle_exponent(&table, movement.as_ref());
+        table.finish();
+        Some(Self { movement: movement?, area_exponent: area_exponent?, place })
+    }
+}
+
+fn read_kernel(table: &Table<'_>, keys: Table<'_>) -> Option<Movement> {
+    let kernel = Kernel::read(&keys);
+    // A shape that is not known has keys that are not known either.
+    if kernel.is_some() {
+        keys.finish();
+    }
+    if !table.has("settlement") {
+        table.missing(
+            "settlement",
+            "\"shared\" (every emigrant heads for a patch) or \"open\" (those who land outside the patches are lost)",
+        );
+    }
+    let choices = [("shared", Settlement::Shared), ("open", Settlement::Open)];
+    let settlement = table.choice("settlement", &choices);
+    let path_mortality_per_km = or(table, "path_mortality_per_km", NOT_NEGATIVE, 0.0);
+    let below_1 = Numbers { low: 0.0, high: 1.0, above_low: false, below_high: true };
+    let tail = or(table, "tail", below_1, TAIL);
+    let max_km = table.number("max_km", POSITIVE);
+    if table.has("max_km") && max_km.is_none() {
+        return None;
+    }
+    Some(Movement::Kernel(KernelDispersal {
+        kernel: kernel?,
+        settlement: settlement?.value,
+        path_mortality_per_km: path_mortality_per_km?,
+        max_km: max_km.map(|said| said.value),
+        tail: tail?,
+    }))
+}
+
+fn read_measured(table: &Table<'_>, keys: Table<'_>) -> Option<Movement> {
+    let file = keys.text("table");
+    keys.finish();
+    let idle = ["settlement", "path_mortality_per_km", "max_km", "tail"];
+    let refused: Vec<Item<'_>> = idle.into_iter().filter_map(|key| table.item(key)).collect();
+    for item in &refused {
+        let why = "no such key beside a measured table, whose probabilities already are those of arriving alive";
+        item.refuse(table.document(), why);
+    }
+    let measured = Measured::read(table.document(), &file?);
+    refused.is_empty().then_some(Movement::Measured(measured?))
+}
+
+/// The number of a key, or what stands for it where the key is missing; `None` only if it is wrong.
+fn or(table: &Table<'_>, key: &str, numbers: Numbers, default: f64) -> Option<f64> {
+    if table.has(key) { table.number(key, numbers).map(|said| said.value) } else { Some(default) }
+}
+
+fn warn_of_an_idle_exponent(table: &Table<'_>, movement: Option<&Movement>) {
+    let reason = match movement {
+        Some(Movement::Measured(_)) => "the measured table says by itself where emigrants arrive",
+        Some(Movement::Kernel(KernelDispersal { settlement: Settlement::Open, .. })) => {
+            "under \"open\" settlement a target catches by its area alone"
+        }
+        _ => return,
+    };
+    if let Some(said) = table.number("area_exponent", NOT_NEGATIVE) {
+        let meaning = format!("{reason}; the exponent is read by the metapopulation capacity only");
+        table.document().warning(said.mistake(meaning));
+    }
+}
