@@ -83,11 +83,7 @@ fn benchmark(n: usize, weather: bool) -> Prepared {
     write("start.csv", &start);
     write("links.csv", &links);
     let survival = |mean: f64| {
-        if weather {
-            rate(|z| 1.0 / (1.0 + (1.0 - mean) / mean * num::exp(-0.3 * z)))
-        } else {
-            mean.to_string()
-        }
+        if weather { rate(|z| 1.0 / (1.0 + (1.0 - mean) / mean * num::exp(-0.3 * z))) } else { mean.to_string() }
     };
     let fecundity = if weather { rate(|z| 1.8 * num::exp(0.3 * z - 0.045)) } else { "1.8".to_owned() };
     write(

@@ -21,6 +21,7 @@
 //! dependence) is one file, with its keys, its checks and its arithmetic side by side, and one line where its kind is
 //! listed.
 
+pub mod cli;
 pub mod demography;
 pub mod engine;
 pub mod environment;
@@ -31,5 +32,4 @@ pub mod num;
 pub mod outcome;
 pub mod output;
 pub mod random;
-pub mod cli;
 pub mod study;

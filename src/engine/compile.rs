@@ -18,7 +18,10 @@ use crate::study::Settings;
 ///
 /// # Errors
 /// Mistakes where a patch would start with more than can be counted.
-pub fn start_counts(landscape: &Landscape, life_history: &LifeHistory) -> Result<(Vec<u32>, Vec<Mistake>), Vec<Mistake>> {
+pub fn start_counts(
+    landscape: &Landscape,
+    life_history: &LifeHistory,
+) -> Result<(Vec<u32>, Vec<Mistake>), Vec<Mistake>> {
     let weights: Vec<f64> = life_history.stages.iter().map(|stage| stage.toward_capacity).collect();
     let shares = life_history.matrix.stable_distribution();
     let mut counts = Vec::with_capacity(landscape.patches.len() * shares.len());

@@ -90,13 +90,23 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let model = match model {
         Ok(model) => model,
         Err(reason) => {
-            let place = environment.place().clone();
-            document.mistake(Mistake::new(place, "correlation = { reach_km = .. }", reason));
+            let place =
+                environment.correlation.as_ref().map_or(document.root().place().clone(), |said| said.place.clone());
+            document.mistake(Mistake::new(place, "environment.correlation", reason));
             return None;
         }
     };
     warn_of_growth(document, &life_history, &model);
-    Some(Prepared { settings, landscape, dispersal, network, life_history, environment, model, inputs: document.inputs() })
+    Some(Prepared {
+        settings,
+        landscape,
+        dispersal,
+        network,
+        life_history,
+        environment,
+        model,
+        inputs: document.inputs(),
+    })
 }
 
 fn required<'d>(root: &Table<'d>, key: &str, meaning: &str) -> Option<Table<'d>> {
@@ -128,13 +138,13 @@ fn check_correlation(
     environment: &EnvironmentTable,
     landscape: &Landscape,
 ) {
-    if life_history.varies() && landscape.patches.len() > 1 && environment.correlation().is_none() {
+    if life_history.varies() && landscape.patches.len() > 1 && environment.correlation.is_none() {
         let varying = life_history.rates.iter().find(|rate| rate.sd > 0.0).map_or("a rate", |rate| &rate.address);
         let expected = format!(
             "correlation under [environment], since {varying} varies from year to year: \
              {{ reach_km = .. }}, \"none\" or \"full\""
         );
-        let mistake = Mistake::new(environment.place_or(document), "environment.correlation is missing", expected);
+        let mistake = Mistake::new(document.root().place().clone(), "environment.correlation is missing", expected);
         document.mistake(mistake.advise(
             "independent years between patches make the network look safer, common years less safe; \
              say how far years are alike",
@@ -176,19 +186,16 @@ fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory)
 fn link(document: &Document, landscape: &Landscape, dispersal: Option<&DispersalTable>) -> Option<Network> {
     match dispersal {
         None => Some(Network::unlinked(landscape.patches.len())),
-        Some(table) => {
-            let neighbours = Neighbours::new(landscape);
-            match Network::build(landscape, table, &|patch, km| neighbours.within(patch, km)) {
-                Ok(checked) => {
-                    checked.warnings.into_iter().for_each(|warning| document.warning(warning));
-                    Some(checked.value)
-                }
-                Err(mistakes) => {
-                    mistakes.into_vec().into_iter().for_each(|mistake| document.mistake(mistake));
-                    None
-                }
+        Some(table) => match Network::build(landscape, table, &Neighbours::new(landscape)) {
+            Ok(checked) => {
+                checked.warnings.into_iter().for_each(|warning| document.warning(warning));
+                Some(checked.value)
             }
-        }
+            Err(mistakes) => {
+                mistakes.into_vec().into_iter().for_each(|mistake| document.mistake(mistake));
+                None
+            }
+        },
     }
 }
 

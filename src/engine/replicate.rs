@@ -1,9 +1,10 @@
 //! One replicate: the state that a thread carries through the years, reused from replicate to replicate.
 
 use super::model::Model;
-use super::realise::WeatherNow;
+use super::realise;
 use super::tally::{PatchTally, Record, Tallies};
 use super::year;
+use crate::environment::WeatherState;
 use crate::random::ReplicateKey;
 
 /// One patch's numbers within one replicate.
@@ -57,8 +58,8 @@ pub(super) struct State {
     pub(super) counts: Vec<u32>,
     /// arrivals of the year, `[patch][stage]`, all 0 between years
     pub(super) arrivals: Vec<u32>,
-    pub(super) weather: Option<WeatherNow>,
-    /// one patch's realised rates
+    pub(super) weather: Option<WeatherState>,
+    /// one patch's realised rates; those that do not vary never change
     pub(super) rates: Vec<f64>,
     /// one number a stage
     pub(super) scratch: Vec<u32>,
@@ -78,7 +79,7 @@ impl State {
             replicate: ReplicateKey::new(model.seed, 0),
             counts: vec![0; cells],
             arrivals: vec![0; cells],
-            weather: model.rates.weather_now(),
+            weather: model.rates.weather_state(),
             rates: model.rates.means().to_vec(),
             scratch: vec![0; model.n_stages],
             own: vec![Own::default(); model.n_patches()],
@@ -111,7 +112,7 @@ impl State {
     fn begin(&mut self, model: &Model, replicate: u32) {
         self.replicate = ReplicateKey::new(model.seed, replicate);
         self.counts.copy_from_slice(&model.start);
-        model.rates.begin(&mut self.weather, self.replicate);
+        realise::begin(&mut self.weather, self.replicate);
         self.saturated = false;
         self.quasi_extinct_in = None;
         // The one allocation of a replicate: its row of totals, which outlives it.

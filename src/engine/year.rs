@@ -10,7 +10,7 @@ use crate::random::{Purpose, YearKey, remove_at_random};
 /// Habitat changes (step 1) and management (step 5) have no part yet: the landscape is as is.
 pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     let key = state.replicate.year(year);
-    weather(model, state, year);
+    weather(model, state);
     local_dynamics(model, state, key);
     dispersal(model, state, key);
     ceiling(model, state, key);
@@ -18,8 +18,8 @@ pub(super) fn step(model: &Model, state: &mut State, year: u32) {
 }
 
 /// Step 2: the year's deviates.
-fn weather(model: &Model, state: &mut State, year: u32) {
-    model.rates.advance(&mut state.weather, year);
+fn weather(model: &Model, state: &mut State) {
+    model.rates.advance(&mut state.weather);
 }
 
 /// Step 3: births, and survival with advance, from the numbers of the last census.
@@ -31,9 +31,9 @@ fn local_dynamics(model: &Model, state: &mut State, key: YearKey) {
             continue;
         }
         let pressure = pressure(model, patch, counts);
-        let rates = model.rates.realise(&state.weather, patch, &mut state.rates);
+        model.rates.realise(state.weather.as_ref(), patch, &mut state.rates);
         let place = key.patch(model.patch_keys[patch]);
-        state.saturated |= model.local.step(counts, rates, pressure, place, &mut state.scratch);
+        state.saturated |= model.local.step(counts, &state.rates, pressure, place, &mut state.scratch);
     }
 }
 
@@ -43,7 +43,8 @@ fn pressure(model: &Model, patch: usize, counts: &[u32]) -> Pressure {
         return Pressure { survival: 0.0, fecundity: 0.0 };
     }
     let Some(crowding) = &model.crowding else { return Pressure::NONE };
-    let numbers: f64 = counts.iter().zip(&model.toward_capacity).map(|(count, weight)| f64::from(*count) * weight).sum();
+    let numbers: f64 =
+        counts.iter().zip(&model.toward_capacity).map(|(count, weight)| f64::from(*count) * weight).sum();
     let multiplier = crowding.curve.multiplier(numbers / capacity);
     Pressure {
         survival: if crowding.on_survival { multiplier } else { 1.0 },
@@ -80,14 +81,7 @@ fn ceiling(model: &Model, state: &mut State, key: YearKey) {
     }
 }
 
-fn remove_surplus(
-    model: &Model,
-    counts: &mut [u32],
-    capacity: f64,
-    key: YearKey,
-    patch: usize,
-    counted: &mut [u32],
-) {
+fn remove_surplus(model: &Model, counts: &mut [u32], capacity: f64, key: YearKey, patch: usize, counted: &mut [u32]) {
     let mut total = 0_u64;
     for ((counted, count), weight) in counted.iter_mut().zip(counts.iter()).zip(&model.toward_capacity) {
         *counted = if *weight > 0.0 { *count } else { 0 };

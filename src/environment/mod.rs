@@ -1,12 +1,11 @@
-//! TEMPORARY
-#![allow(missing_docs, clippy::all)]
-use crate::study::{Document, Table};
-use crate::mistake::Place;
-#[derive(Debug, Clone, Default)]
-pub struct EnvironmentTable;
-impl EnvironmentTable {
-    pub fn read(_: Table<'_>) -> Option<Self> { Some(Self) }
-    pub fn correlation(&self) -> Option<()> { None }
-    pub fn place(&self) -> Place { Place::Call }
-    pub fn place_or(&self, _: &Document) -> Place { Place::Call }
-}
+//! The weather: correlated deviates by patch and year, and the yearly rates that they mean.
+
+pub mod field;
+pub mod rates;
+mod table;
+mod weather;
+
+pub use field::{Field, MOST_CORRELATED_PLACES};
+pub use rates::{Located, RateCurves, YearlyRate};
+pub use table::{Correlation, EnvironmentTable};
+pub use weather::{Weather, WeatherState};

@@ -77,7 +77,7 @@ fn place(file: &Path, index: usize, name: Option<&String>) -> Place {
     Place::Feature { file: file.to_path_buf(), index, id: name.cloned() }
 }
 
-fn parse(file: &Path, bytes: &[u8], findings: &Findings<'_>) -> Option<Map<String, Value>> {
+pub(super) fn parse(file: &Path, bytes: &[u8], findings: &Findings<'_>) -> Option<Map<String, Value>> {
     let bytes = bytes.strip_prefix("\u{feff}".as_bytes()).unwrap_or(bytes);
     let mistake = match serde_json::from_slice(bytes) {
         Ok(Value::Object(root)) => return Some(root),
@@ -118,7 +118,7 @@ fn unreadable(place: Place, bytes: &[u8], error: &serde_json::Error) -> Mistake 
     Mistake::new(place, format!("not JSON: {message}"), COLLECTION).advise(EXPORT)
 }
 
-fn features_of(file: &Path, root: &mut Map<String, Value>, findings: &Findings<'_>) -> Option<Vec<Value>> {
+pub(super) fn features_of(file: &Path, root: &mut Map<String, Value>, findings: &Findings<'_>) -> Option<Vec<Value>> {
     let features = root.remove("features");
     let found = match (root.get("type").and_then(Value::as_str), features) {
         (Some("FeatureCollection"), Some(Value::Array(features))) if !features.is_empty() => return Some(features),

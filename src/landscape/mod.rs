@@ -9,6 +9,7 @@ mod degrees;
 mod edges;
 mod findings;
 mod geojson;
+mod glance;
 mod ground;
 mod measure;
 mod names;
@@ -23,6 +24,7 @@ mod table;
 mod tables;
 mod values;
 
+pub use glance::{Glance, Property, Values};
 pub use neighbours::Neighbours;
 pub use patch::{Crs, Landscape, Patch, Start};
 pub use plane::{Ellipsoid, EqualAreaPlane, WGS84};

@@ -2,7 +2,7 @@
 
 use super::kernel::Kernel;
 use super::table::KernelDispersal;
-use crate::landscape::Landscape;
+use crate::landscape::{Landscape, Neighbours};
 use crate::num;
 
 /// What a network asks of the distances of a landscape: symmetric, in kilometres.
@@ -13,6 +13,16 @@ pub trait Distances: Sync {
 
     /// The distance between two patches.
     fn distance_km(&self, a: usize, b: usize) -> f64;
+}
+
+impl Distances for Neighbours {
+    fn beyond_within(&self, patch: usize, beyond_km: f64, km: f64) -> Vec<(usize, f64)> {
+        Self::beyond_within(self, patch, beyond_km, km)
+    }
+
+    fn distance_km(&self, a: usize, b: usize) -> f64 {
+        Self::distance_km(self, a, b)
+    }
 }
 
 /// The part of `tail` that the search may leave unseen.

@@ -4,17 +4,21 @@
 mod columns;
 pub mod csv;
 mod files;
+mod first_study;
 mod folder;
 pub mod geojson;
 pub mod json;
 mod terminal;
 #[cfg(test)]
 mod tests;
+mod understood;
 mod words;
 
 pub use files::{ALL_FILES, RUN_FILES};
+pub use first_study::{first_study, write_new};
 pub use folder::{Draft, Existing, Folder};
 pub use terminal::summary;
+pub use understood::Understood;
 pub use words::{CAUTIONS, answer};
 
 use crate::landscape::Landscape;

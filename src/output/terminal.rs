@@ -155,13 +155,13 @@ fn shortened(name: &str) -> String {
 
 /// The side of a column on which its texts line up.
 #[derive(Clone, Copy)]
-enum Side {
+pub(super) enum Side {
     Left,
     Right,
 }
 
 /// Rows as lines with their columns lined up, two spaces before each.
-fn lines(rows: Vec<Vec<String>>, sides: &[Side]) -> Vec<String> {
+pub(super) fn lines(rows: Vec<Vec<String>>, sides: &[Side]) -> Vec<String> {
     let width = |column: usize| rows.iter().map(|row| row[column].chars().count()).max().unwrap_or(0);
     let widths: Vec<usize> = (0..rows.first().map_or(0, Vec::len)).map(width).collect();
     let line = |row: &Vec<String>| {

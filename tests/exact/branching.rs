@@ -69,7 +69,12 @@ fn two_type_branching() {
         ("poisson from 4 and 3", "poisson", [4, 3], [2.352e-4, 0.036_787_6, 0.113_715_6, 0.225_500_0, 0.342_529_1]),
         ("one young from a juvenile", "at most one", [1, 0], [0.6, 0.743_414_6, 0.814_835_3, 0.864_457_8, 0.897_404_1]),
         ("one young from an adult", "at most one", [0, 1], [0.03, 0.409_914_2, 0.557_518_4, 0.667_758_6, 0.744_416_6]),
-        ("one young from 4 and 3", "at most one", [4, 3], [3.499e-6, 0.021_037_9, 0.076_393_6, 0.166_277_6, 0.267_547_2]),
+        (
+            "one young from 4 and 3",
+            "at most one",
+            [4, 3],
+            [3.499e-6, 0.021_037_9, 0.076_393_6, 0.166_277_6, 0.267_547_2],
+        ),
     ];
     for (name, young, start, nulls) in cases {
         let seen = Case::new(name, vec![patch(ROOMY, &start)], &["juvenile", "adult"], &two_stages(young)).run(50);
@@ -84,9 +89,10 @@ fn two_type_branching() {
 #[test]
 fn small_steps_approach_birth_and_death() {
     let life = one_stage(0.998, 0.003, "at most one", "none");
-    for (name, founders, by_5, by_20) in
-        [("birth and death from one", 1, 0.440_383_7, 0.633_609_6), ("birth and death from five", 5, 0.016_563_7, 0.102_119_5)]
-    {
+    for (name, founders, by_5, by_20) in [
+        ("birth and death from one", 1, 0.440_383_7, 0.633_609_6),
+        ("birth and death from five", 5, 0.016_563_7, 0.102_119_5),
+    ] {
         let seen = Case::new(name, vec![patch(ROOMY, &[founders])], &["all"], &life).run(2_000);
         let n = seen.tallies.records.len() as f64;
         for (census, null) in [(500, by_5), (2_000, by_20)] {

@@ -126,7 +126,12 @@ fn events_and_movers_of_two_patches() {
             .iter()
             .zip(means.iter().zip(nulls))
         {
-            seen.mean(&format!("{what} of patch {}", position + 1), sum / n, null[position], (10.0 * null[position]).sqrt());
+            seen.mean(
+                &format!("{what} of patch {}", position + 1),
+                sum / n,
+                null[position],
+                (10.0 * null[position]).sqrt(),
+            );
         }
     }
     let lost: u64 = seen.tallies.patches.iter().map(|patch| patch.emigrants - patch.arrived_elsewhere).sum();
@@ -239,8 +244,9 @@ fn dispersal_by_stage() {
     let life = "[life_history]\nkind = \"stages\"\ndensity_dependence = { form = \"ceiling\" }\n\
         [[life_history.stage]]\nname = \"juvenile\"\nsurvival = 0.5\nemigration = 0.4\n\
         [[life_history.stage]]\nname = \"adult\"\nsurvival = 0.75\nfecundity = 0.7\nemigration = 0.1\n";
-    let case = Case::new("dispersal by stage", vec![patch(5.0, &[1, 3]), patch(4.0, &[0, 1])], &["juvenile", "adult"], life)
-        .arriving(&[&[0.0, 0.7], &[0.7, 0.0]]);
+    let case =
+        Case::new("dispersal by stage", vec![patch(5.0, &[1, 3]), patch(4.0, &[0, 1])], &["juvenile", "adult"], life)
+            .arriving(&[&[0.0, 0.7], &[0.7, 0.0]]);
     let seen = case.run(50);
     check(
         &seen,

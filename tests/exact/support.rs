@@ -215,7 +215,11 @@ impl Seen {
         let tolerance = 4.0 * sd / self.n().sqrt();
         // The tables are rounded to a few digits: half a unit of the last is theirs, not ours.
         let rounding = 5.1e-6 * null.abs().max(1.0);
-        assert!((seen - null).abs() <= tolerance + rounding, "{}: {what}: {seen} is not {null} +- {tolerance}", self.name);
+        assert!(
+            (seen - null).abs() <= tolerance + rounding,
+            "{}: {what}: {seen} is not {null} +- {tolerance}",
+            self.name
+        );
     }
 
     /// A proportion against its null, 4 standard errors; the exact binomial where few are expected.
@@ -237,9 +241,8 @@ fn two_sided_tail(n: u64, p: f64, seen: u64) -> f64 {
     if p <= 0.0 {
         return if seen == 0 { 1.0 } else { 0.0 };
     }
-    let ln_choose = |k: u64| {
-        num::ln_gamma(n as f64 + 1.0) - num::ln_gamma(k as f64 + 1.0) - num::ln_gamma((n - k) as f64 + 1.0)
-    };
+    let ln_choose =
+        |k: u64| num::ln_gamma(n as f64 + 1.0) - num::ln_gamma(k as f64 + 1.0) - num::ln_gamma((n - k) as f64 + 1.0);
     let mass = |k: u64| num::exp(ln_choose(k) + k as f64 * num::ln(p) + (n - k) as f64 * num::ln_1p(-p));
     let lower: f64 = (0..=seen).map(mass).sum();
     let upper = 1.0 - if seen == 0 { 0.0 } else { (0..seen).map(mass).sum::<f64>() };

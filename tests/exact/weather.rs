@@ -170,9 +170,8 @@ fn moran_effect() {
         "[life_history]\nkind = \"counts\"\ngrowth = {{ mean = {mean}, sd = {sd} }}\n\
          density_dependence = {{ form = \"ricker\" }}\n[environment]\ncorrelation = {{ reach_km = {reach} }}\n"
     );
-    let points = [10.0, 11.0]
-        .map(|x| Point { at_km: [x, 0.0], area_ha: 1.0, capacity: 1e6, start: vec![1_000_000] })
-        .to_vec();
+    let points =
+        [10.0, 11.0].map(|x| Point { at_km: [x, 0.0], area_ha: 1.0, capacity: 1e6, start: vec![1_000_000] }).to_vec();
     let mut case = Case::new("moran effect", points, &["all"], &life);
     case.replicates = 10_000;
     let seen = case.run(50);
@@ -190,8 +189,7 @@ fn moran_effect() {
             (patch.abundance_at_end_squares as f64 / n - mean * mean) * n / (n - 1.0)
         })
         .collect();
-    let correlation =
-        (variance_of_sum - variances[0] - variances[1]) / (2.0 * (variances[0] * variances[1]).sqrt());
+    let correlation = (variance_of_sum - variances[0] - variances[1]) / (2.0 * (variances[0] * variances[1]).sqrt());
     assert!((0.4594..=0.5394).contains(&correlation), "correlation {correlation}");
     let relative_sd = variances[0].sqrt() / 1e6;
     assert!((relative_sd - 0.051_03).abs() < 0.05 * 0.051_03, "sd {relative_sd}");

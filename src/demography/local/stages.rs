@@ -96,7 +96,9 @@ impl Stages {
                 .zip(fecundity)
                 .enumerate()
                 .filter(|(_, (count, rate))| **count > 0 && **rate > 0.0)
-                .map(|(stage, (count, rate))| binomial(&mut place.draw(Purpose::Young(stage as u32)), *count, rate * pressure))
+                .map(|(stage, (count, rate))| {
+                    binomial(&mut place.draw(Purpose::Young(stage as u32)), *count, rate * pressure)
+                })
                 .fold(0, u32::saturating_add),
         }
     }
