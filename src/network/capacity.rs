@@ -150,3 +150,42 @@ impl<'a> Side<'a> {
 fn dot(a: &[f64], b: &[f64]) -> f64 {
     a.iter().zip(b).map(|(a, b)| a * b).sum()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn capacity(n: usize, entries: &[(u32, u32, f64)]) -> Capacity {
+        Capacity::new(&Sparse::new(n, entries.iter().copied()))
+    }
+
+    /// A star has the eigenvalues plus and minus the root of the sum of squares, the hub half of the shares.
+    #[test]
+    fn a_matrix_whose_least_eigenvalue_is_as_large() {
+        let star = capacity(4, &[(0, 1, 1.0), (1, 0, 1.0), (0, 2, 2.0), (2, 0, 2.0), (0, 3, 2.0), (3, 0, 2.0)]);
+        assert!((star.value - 3.0).abs() < 1e-9);
+        for (share, truth) in star.shares.iter().zip([1.5, 1.5 / 9.0, 6.0 / 9.0, 6.0 / 9.0]) {
+            assert!((share - truth).abs() < 1e-8);
+        }
+    }
+
+    #[test]
+    fn one_way_links_close_no_circle() {
+        assert!(capacity(3, &[(0, 1, 5.0), (1, 2, 5.0)]).value.abs() < f64::EPSILON);
+        assert!(capacity(0, &[]).value.abs() < f64::EPSILON);
+        // A pair of root 2 x 8, a weaker pair, and one-way links between them, which change nothing.
+        let pairs = capacity(4, &[(0, 1, 1.0), (1, 0, 1.0), (2, 3, 2.0), (3, 2, 8.0), (0, 2, 9.0), (1, 3, 9.0)]);
+        assert!((pairs.value - 4.0).abs() < 1e-9);
+        for (share, truth) in pairs.shares.iter().zip([0.0, 0.0, 2.0, 2.0]) {
+            assert!((share - truth).abs() < 1e-8);
+        }
+    }
+
+    /// A circle of three in one direction: the cube root of the product, shares alike.
+    #[test]
+    fn a_circle_in_one_direction() {
+        let circle = capacity(3, &[(0, 1, 1.0), (1, 2, 4.0), (2, 0, 16.0)]);
+        assert!((circle.value - 4.0).abs() < 1e-8);
+        assert!(circle.shares.iter().all(|share| (share - 4.0 / 3.0).abs() < 1e-7));
+    }
+}

@@ -4,15 +4,12 @@ use super::kernel::Kernel;
 use super::outline::{Outline, Point};
 use crate::landscape::Landscape;
 
-/// Start points of the coarsest spread are four to this power, those of the finest to [`FINEST`].
-const COARSEST: u32 = 1;
+/// The finest spread has four to this power points, the coarsest just one.
 const FINEST: u32 = 7;
-/// The least spread from which nearness is judged.
+/// The least spread from which a near patch is seen.
 const NEAR: u32 = 2;
 /// Points lie closer than this part of the length over which the kernel changes, and of the gap between two patches.
 const SPACING: f64 = 1.0 / 6.0;
-/// Diameters below this part of distance and mean: density at the centroids times area is enough (to about 3 %).
-const SMALL: f64 = 0.1;
 
 /// The landscape as ground that is left and landed on.
 #[derive(Debug)]
@@ -24,7 +21,7 @@ pub(super) struct Ground<'a> {
 #[derive(Debug)]
 struct PatchGround {
     outline: Outline,
-    /// evenly spread points, four times as many from one spread to the next
+    /// evenly spread points: one, the centroid, and four times as many from each spread to the next
     spreads: Vec<Vec<Point>>,
 }
 
@@ -46,7 +43,7 @@ impl<'a> Ground<'a> {
 
     /// Whether even the finest spread over a patch leaves its points farther apart than the kernel's bulk.
     pub(super) fn is_coarse(&self, patch: usize) -> bool {
-        spread_for(self.patches[patch].outline.area_km2, self.kernel.bulk_km()) > FINEST
+        spread_for(&self.patches[patch].outline, self.kernel.bulk_km()) > FINEST
     }
 
     /// Probability that somebody who starts in a patch lands outside of it.
@@ -59,10 +56,6 @@ impl<'a> Ground<'a> {
     pub(super) fn landing(&self, from: usize, to: usize) -> f64 {
         let [source, target] = [&self.patches[from], &self.patches[to]];
         let between = distance(source.outline.centre, target.outline.centre);
-        let widest = 2.0 * source.outline.radius_km.max(target.outline.radius_km);
-        if widest < SMALL * between.min(self.kernel.mean_km()) {
-            return self.kernel.density(between) * target.outline.area_km2;
-        }
         let gap = between - source.outline.radius_km - target.outline.radius_km;
         let spacing = SPACING * self.kernel.bulk_km().min(gap);
         match (source.spread_to(spacing), target.spread_to(spacing)) {
@@ -80,8 +73,8 @@ impl<'a> Ground<'a> {
 
 impl PatchGround {
     fn new(outline: Outline, kernel: &Kernel) -> Self {
-        let least = spread_for(outline.area_km2, SPACING * kernel.bulk_km()).clamp(NEAR, FINEST);
-        let spreads = (COARSEST..=least).map(|power| outline.spread(4_usize.pow(power))).collect();
+        let finest = spread_for(&outline, SPACING * kernel.bulk_km()).clamp(NEAR, FINEST);
+        let spreads = (0..=finest).map(|power| outline.spread(4_usize.pow(power))).collect();
         Self { outline, spreads }
     }
 
@@ -90,17 +83,19 @@ impl PatchGround {
         if spacing <= 0.0 {
             return None;
         }
-        let power = spread_for(self.outline.area_km2, spacing).max(COARSEST);
-        self.spreads.get((power - COARSEST) as usize).map(Vec::as_slice)
+        self.spreads.get(spread_for(&self.outline, spacing) as usize).map(Vec::as_slice)
     }
 }
 
-/// The power of four that spreads points over an area no farther apart than `spacing`; at most one above the finest.
-fn spread_for(area_km2: f64, spacing: f64) -> u32 {
+/// The power of four that spreads points over a patch no farther apart than `spacing`, counted along its length where it
+/// is a strip; one above the finest if that is not enough.
+fn spread_for(outline: &Outline, spacing: f64) -> u32 {
+    let over_area = outline.area_km2 / (spacing * spacing);
+    let along_side = outline.radius_km * std::f64::consts::SQRT_2 / spacing;
+    let mut left = over_area.max(along_side);
     let mut power = 0;
-    let mut cell_km2 = area_km2;
-    while cell_km2 > spacing * spacing && power <= FINEST {
-        cell_km2 /= 4.0;
+    while left > 1.0 && power <= FINEST {
+        left /= 4.0;
         power += 1;
     }
     power

@@ -133,3 +133,60 @@ fn warn_of_an_idle_exponent(table: &Table<'_>, movement: Option<&Movement>) {
         table.document().warning(said.mistake(meaning));
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::study::Document;
+    use std::path::Path;
+
+    fn read(keys: &str) -> (Option<DispersalTable>, Vec<String>, usize) {
+        let document = Document::parse(Path::new("study.toml"), format!("[dispersal]\n{keys}"));
+        let table = DispersalTable::read(document.root().table("dispersal").unwrap());
+        match document.verdict() {
+            Ok(warnings) => (table, Vec::new(), warnings.len()),
+            Err(mistakes) => (table, mistakes.into_vec().into_iter().map(|mistake| mistake.found).collect(), 0),
+        }
+    }
+
+    const KERNEL: &str = "kernel = { shape = 'exponential', mean_km = 1.4, origin = 'ringing' }\n";
+
+    #[test]
+    fn keys_left_out_take_their_defaults() {
+        let (table, mistakes, warnings) = read(&format!("{KERNEL}settlement = 'shared'"));
+        assert!(mistakes.is_empty() && warnings == 0);
+        let table = table.unwrap();
+        assert!((table.area_exponent - 1.0).abs() < f64::EPSILON);
+        let Movement::Kernel(by) = table.movement else { panic!("a kernel") };
+        assert_eq!((by.settlement, by.max_km), (Settlement::Shared, None));
+        assert!((by.tail - 1e-4).abs() < f64::EPSILON && by.path_mortality_per_km.abs() < f64::EPSILON);
+    }
+
+    #[test]
+    fn all_mistakes_are_found_at_once() {
+        let (table, mistakes, _) = read(&format!("{KERNEL}settlement = 'opn'\ntail = 1.0\nmax_km = 0\nmean = 3"));
+        assert!(table.is_none());
+        let expected = [
+            "dispersal.settlement = 'opn'",
+            "dispersal.tail = 1.0",
+            "dispersal.max_km = 0",
+            "dispersal.mean is not a key",
+        ];
+        assert_eq!(mistakes, expected);
+        let (_, mistakes, _) = read(KERNEL);
+        assert_eq!(mistakes, ["dispersal.settlement is missing"]);
+        let (_, mistakes, _) = read("settlement = 'open'");
+        assert_eq!(mistakes, ["dispersal.kernel is missing"]);
+        let (_, mistakes, _) = read("settlement = 'open'\nkernel = { shape = 'gaussian', mean_km = 1, c = 2 }");
+        assert_eq!(mistakes, ["dispersal.kernel.c is not a key"]);
+        let (table, mistakes, _) = read(&format!("{KERNEL}settlement = 'open'\narea_exponent = -1"));
+        assert!(table.is_none());
+        assert_eq!(mistakes, ["dispersal.area_exponent = -1"]);
+    }
+
+    #[test]
+    fn an_exponent_that_plays_no_part_is_told() {
+        assert_eq!(read(&format!("{KERNEL}settlement = 'open'\narea_exponent = 0.5")).2, 1);
+        assert_eq!(read(&format!("{KERNEL}settlement = 'shared'\narea_exponent = 0.5")).2, 0);
+    }
+}

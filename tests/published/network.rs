@@ -1,5 +1,7 @@
 //! Checks of network.
 
+#![expect(clippy::unwrap_used, reason = "a test fails where it panics")]
+
 use std::f64::consts::{PI, TAU};
 use std::path::Path;
 
@@ -10,8 +12,9 @@ use eyot::network::{
     Capacity, Connectivity, DispersalTable, Distances, Graph, Kernel, KernelDispersal, Movement, Network, Settlement,
     Sparse, Structure,
 };
+use eyot::num;
 use eyot::study::Document;
-use geo::{Geometry, MultiPolygon, Rect, coord};
+use geo::{BoundingRect, Geometry, MultiPolygon, Rect, coord};
 
 /// Passes if a value agrees with a printed one to half a unit of its last digit.
 fn agrees(value: f64, printed: &str) {
@@ -154,7 +157,7 @@ fn kernels_integrate_to_one_and_to_their_mean() {
     for (name, kernel) in kernels() {
         let (step, mut all, mut mean, mut beyond_3) = (0.005, 0.0, 0.0, 0.0);
         for position in -5_000..5_000 {
-            let km = (step * (f64::from(position) + 0.5)).exp();
+            let km = num::exp(step * (f64::from(position) + 0.5));
             let ring = TAU * km * km * kernel.density(km) * step;
             all += ring;
             mean += km * ring;
@@ -203,7 +206,9 @@ fn landing_in_a_disc_is_the_integral_of_the_kernel() {
 
 /// Two rectangles side by side: the kernel averaged over all pairs of points, from the distribution of the difference
 /// of two uniform points (a product of trapezoids), by the midpoint rule; computed here, another way than the network's.
-/// The rules for near and for far patches both. Within 1 %, but 10 % where the probability is below a millionth.
+/// Near and far patches both. Points stand for the source (and, farther off, for the target), so the far flank of the
+/// gaussian, which steepens, is the hardest: 1 % where the probability is above a thousandth, 3 % above a millionth, 10 %
+/// below.
 #[test]
 fn landing_between_rectangles_is_the_double_integral() {
     // Probability density of the difference between uniform points of [0, a] and [shift, shift + b], at u.
@@ -239,7 +244,12 @@ fn landing_between_rectangles_is_the_double_integral() {
                 let network = build(&landscape(patches), &table(kernel, Settlement::Open, 0.0));
                 let own = integral(kernel, [0.0, 0.0], source, source);
                 let exact = integral(kernel, shift, source, target) / (1.0 - own);
-                close(probability(&network, 0, 1), exact, if exact > 1e-6 { 0.01 } else { 0.1 });
+                let tolerance = match exact {
+                    1e-3.. => 0.01,
+                    1e-6.. => 0.03,
+                    _ => 0.1,
+                };
+                close(probability(&network, 0, 1), exact, tolerance);
             }
         }
     }
@@ -310,6 +320,63 @@ fn the_weakest_links_are_cut_as_if_all_pairs_were_seen() {
                 // Below, numbers lose their digits one by one.
                 for (weight, to) in kept.into_iter().filter(|(weight, _)| *weight > 1e-290) {
                     close(probability(&network, from, to), weight / kept_total, 1e-6);
+                }
+            }
+        }
+    }
+}
+
+/// Rectangles measured from edge to edge, which is where the search under `open` may stop soonest.
+struct EdgesOfRectangles<'a>(&'a Landscape);
+
+impl Distances for EdgesOfRectangles<'_> {
+    fn beyond_within(&self, patch: usize, beyond_km: f64, km: f64) -> Vec<(usize, f64)> {
+        let others = (0..self.0.patches.len()).filter(|other| *other != patch);
+        let measured = others.map(|other| (other, self.distance_km(patch, other)));
+        measured.filter(|(_, apart)| *apart > beyond_km && *apart <= km).collect()
+    }
+
+    fn distance_km(&self, a: usize, b: usize) -> f64 {
+        let [a, b] = [a, b].map(|patch| self.0.patches[patch].outline_km.bounding_rect().unwrap());
+        let apart = |low_a: f64, high_a: f64, low_b: f64, high_b: f64| (low_b - high_a).max(low_a - high_b).max(0.0);
+        let x = apart(a.min().x, a.max().x, b.min().x, b.max().x);
+        let y = apart(a.min().y, a.max().y, b.min().y, b.max().y);
+        (x * x + y * y).sqrt()
+    }
+}
+
+/// Under `open` too the search misses nothing that the tail would keep, and the cut share is lost: the rows with a tail
+/// against those with none, cut here.
+#[test]
+fn under_open_the_cut_share_is_lost() {
+    let mut landscape = scattered(120, 25.0, 5);
+    for (position, patch) in landscape.patches.iter_mut().enumerate() {
+        let wide = 0.1 + 0.05 * (position % 17) as f64;
+        *patch = rectangle(&patch.name, patch.centroid_km, [wide, patch.area_ha / 100.0 / wide]);
+    }
+    let tail = 0.01;
+    for between_centroids in [false, true] {
+        landscape.between_centroids = between_centroids;
+        let edges = EdgesOfRectangles(&landscape);
+        let centroids = AllPairs(&landscape);
+        let distances: &dyn Distances = if between_centroids { &centroids } else { &edges };
+        for (name, kernel) in kernels() {
+            let build =
+                |tail| Network::build(&landscape, &table(&kernel, Settlement::Open, tail), distances).unwrap().value;
+            let (whole, cut) = (build(0.0), build(tail));
+            for from in 0..120 {
+                let mut row: Vec<f64> = whole.row(from).iter().map(|link| link.probability).collect();
+                row.sort_by(f64::total_cmp);
+                let landed: f64 = row.iter().sum();
+                let mut gone = 0.0;
+                while gone + row[0] <= tail * landed {
+                    gone += row.remove(0);
+                }
+                assert_eq!(cut.row(from).len(), row.len(), "{name} from {from}");
+                close(cut.cut_share[from] * landed, gone, 2e-3);
+                close(cut.lost[from] - whole.lost[from], gone, 2e-3);
+                for link in cut.row(from) {
+                    close(link.probability, probability(&whole, from, link.to as usize), 1e-12);
                 }
             }
         }
@@ -416,7 +483,7 @@ fn capacity_matrix(places: &[([f64; 2], f64)], alpha: f64) -> Sparse {
     let entries = pairs.map(|(i, j)| {
         let [(a, area_i), (b, area_j)] = [i, j].map(|patch| places[patch as usize]);
         let apart = ((a[0] - b[0]) * (a[0] - b[0]) + (a[1] - b[1]) * (a[1] - b[1])).sqrt();
-        (i, j, (-alpha * apart).exp() * area_i * area_j)
+        (i, j, num::exp(-alpha * apart) * area_i * area_j)
     });
     Sparse::new(places.len(), entries)
 }
@@ -470,7 +537,7 @@ fn the_structure_of_a_network_has_the_same_capacity() {
         let mut next = [0.0; 5];
         for i in 0..5 {
             for j in (0..5).filter(|j| *j != i) {
-                let shape = (-0.5 * distance(&landscape, i, j)).exp();
+                let shape = num::exp(-0.5 * distance(&landscape, i, j));
                 next[i] += shape * places[i].1 * places[j].1.sqrt() * vector[j];
             }
         }

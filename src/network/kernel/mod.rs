@@ -2,7 +2,7 @@
 //!
 //! A kernel is a two-dimensional location density k(r), in landings per km2 at distance r km, with the integral of
 //! 2 pi r k(r) equal to 1 (Nathan, Klein, Robledo-Arnuncio & Revilla 2012). Each kind is one file with its keys, their
-//! checks and its arithmetic, and one line in [`KINDS`].
+//! checks and its arithmetic, and one line in the list of kinds.
 
 mod exponential;
 mod exponential_power;
