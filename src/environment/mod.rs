@@ -1,1 +1,11 @@
-//! The room `environment`.
+//! The weather: correlated deviates by patch and year, and the yearly rates that they mean.
+
+pub mod field;
+pub mod rates;
+mod table;
+mod weather;
+
+pub use field::{Field, MOST_CORRELATED_PLACES};
+pub use rates::{Located, RateCurves, YearlyRate};
+pub use table::{Correlation, EnvironmentTable};
+pub use weather::{Weather, WeatherState};

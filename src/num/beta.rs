@@ -41,6 +41,11 @@ impl Beta {
         (self.a, self.b)
     }
 
+    /// The mean, a / (a + b).
+    pub fn mean(&self) -> f64 {
+        self.a / (self.a + self.b)
+    }
+
     /// Regularised incomplete beta function: the chance of at most `x`; 0 below 0 and 1 above 1.
     pub fn cdf(&self, x: f64) -> f64 {
         if x <= 0.0 {
@@ -163,6 +168,7 @@ fn fraction(a: f64, b: f64, x: f64) -> f64 {
 }
 
 #[cfg(test)]
+#[expect(clippy::excessive_precision, reason = "reference values as they were made")]
 mod tests {
     use super::*;
     use crate::num::normal;
