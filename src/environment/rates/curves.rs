@@ -80,8 +80,10 @@ fn read(table: &[[f64; 2]], located: &Located) -> f64 {
     let [here, next] = [table[located.knot], table[located.knot + 1]];
     let [w0, w1, w2, w3] = located.weights;
     let value = here[0] * w0 + here[1] * w1 + next[0] * w2 + next[1] * w3;
-    // Rounding may overstep a knot, and so the end of what the rate can be.
-    value.max(here[0]).min(next[0])
+    // Rounding may overstep a knot, and so the end of what the rate can be. No value is NaN, for which `max` and `min` would
+    // have to look.
+    let value = if value > here[0] { value } else { here[0] };
+    if value < next[0] { value } else { next[0] }
 }
 
 /// What value and slope at both ends of a step count for at a fraction of it.
