@@ -110,10 +110,10 @@ mod tests {
         let said =
             read("correlation = { reach_km = 12, nugget = 0.2, origin = \"gauges\" }\nautocorrelation = -0.3").unwrap();
         assert_eq!(said.correlation.unwrap().value, Correlation::Reach { reach_km: 12.0, nugget: 0.2 });
-        assert!(said.autocorrelation == -0.3 && said.between_rates == 1.0);
+        assert_eq!((said.autocorrelation, said.between_rates), (-0.3, 1.0));
         assert_eq!(read("correlation = \"full\"").unwrap().correlation.unwrap().value, Correlation::Full);
         let said = read("correlation = \"none\"\nbetween_rates = -1").unwrap();
-        assert!(said.correlation.unwrap().value == Correlation::None && said.between_rates == -1.0);
+        assert_eq!((said.correlation.unwrap().value, said.between_rates), (Correlation::None, -1.0));
     }
 
     #[test]

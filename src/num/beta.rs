@@ -168,6 +168,7 @@ fn fraction(a: f64, b: f64, x: f64) -> f64 {
 }
 
 #[cfg(test)]
+#[expect(clippy::excessive_precision, reason = "reference values as they were made")]
 mod tests {
     use super::*;
     use crate::num::normal;

@@ -116,6 +116,7 @@ const FAR_TAIL: Rational = [
 ];
 
 #[cfg(test)]
+#[expect(clippy::excessive_precision, reason = "reference values as they were made")]
 mod tests {
     use super::*;
 

@@ -141,27 +141,83 @@ fn search(stream: &mut Stream, n: u32, p: f64) -> u32 {
 /// Algorithm BTRS of Hörmann (1993), The generation of binomial random variates, J. Stat. Comput. Simul. 46; for
 /// n p >= 10. The masses in its last step are Loader's, right at every size.
 fn transformed_rejection(stream: &mut Stream, n: u32, p: f64) -> u32 {
-    let n_real = f64::from(n);
-    let mean = n_real * p;
-    let sd = (mean * (1.0 - p)).sqrt();
-    let b = 1.15 + 2.53 * sd;
-    let a = -0.0873 + 0.0248 * b + 0.01 * p;
-    let inside = 0.92 - 4.2 / b;
+    let n = f64::from(n);
+    let hat = Hat::over(n, p);
     loop {
         let u = stream.uniform() - 0.5;
         let v = stream.open_uniform();
         let from_edge = 0.5 - u.abs();
-        let k = ((2.0 * a / from_edge + b) * u + mean + 0.5).floor();
-        if from_edge >= 0.07 && v <= inside {
+        let k = hat.number(u, from_edge);
+        if from_edge >= 0.07 && v <= hat.inside {
             return k as u32;
         }
-        if !(0.0..=n_real).contains(&k) {
-            continue;
-        }
-        let mode = ((n_real + 1.0) * p).floor();
-        let height = (2.83 + 5.1 / b) * sd / (a / (from_edge * from_edge) + b);
-        if ln(v * height) <= ln_binomial(k, n_real, p) - ln_binomial(mode, n_real, p) {
+        if (0.0..=n).contains(&k) && ln(v * hat.height / hat.slope(from_edge)) <= ln_to_mode(k, n, p) {
             return k as u32;
+        }
+    }
+}
+
+/// ln of the mass of k over that of the mode.
+fn ln_to_mode(k: f64, n: f64, p: f64) -> f64 {
+    let mode = ((n + 1.0) * p).floor();
+    ln_binomial(k, n, p) - ln_binomial(mode, n, p)
+}
+
+/// A uniform number from -1/2 to 1/2 transformed nearly to the distribution wanted.
+struct Hat {
+    mean: f64,
+    a: f64,
+    b: f64,
+    /// away from the edges, a height that lies below the distribution
+    inside: f64,
+    /// what the mass over the mode's times the slope is at most
+    height: f64,
+}
+
+impl Hat {
+    fn over(n: f64, p: f64) -> Self {
+        let mean = n * p;
+        let sd = (mean * (1.0 - p)).sqrt();
+        let b = 1.15 + 2.53 * sd;
+        let a = -0.0873 + 0.0248 * b + 0.01 * p;
+        Self { mean, a, b, inside: 0.92 - 4.2 / b, height: (2.83 + 5.1 / b) * sd }
+    }
+
+    fn number(&self, u: f64, from_edge: f64) -> f64 {
+        ((2.0 * self.a / from_edge + self.b) * u + self.mean + 0.5).floor()
+    }
+
+    /// The derivative of the number by u.
+    fn slope(&self, from_edge: f64) -> f64 {
+        self.a / (from_edge * from_edge) + self.b
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// What makes rejection exact: the distribution lies under the hat everywhere, and above what is taken unseen.
+    #[test]
+    fn the_hat_covers_the_distribution() {
+        for i in 0..20 {
+            let n = (257.0 * exp(0.87 * f64::from(i))).floor().min(f64::from(u32::MAX));
+            for j in 0..20 {
+                let p = 10.0 / n * exp(f64::from(j) / 19.0 * ln(0.5 * n / 10.0));
+                let hat = Hat::over(n, p);
+                for step in 1..4000 {
+                    let u = f64::from(step) / 4000.0 - 0.5;
+                    let from_edge = 0.5 - u.abs();
+                    let k = hat.number(u, from_edge);
+                    if (0.0..=n).contains(&k) {
+                        let share = exp(ln_to_mode(k, n, p)) * hat.slope(from_edge) / hat.height;
+                        assert!(share <= 1.0, "{n} {p}, u {u}: {share}");
+                        assert!(share >= hat.inside || from_edge < 0.07, "{n} {p}, u {u}: {share}");
+                    } else {
+                        assert!(from_edge < 0.07, "{n} {p}, u {u}: {k}");
+                    }
+                }
+            }
         }
     }
 }

@@ -14,6 +14,8 @@ mod poisson;
 mod poisson_table;
 mod purpose;
 pub mod streams;
+#[cfg(test)]
+mod tests;
 mod thinning;
 
 pub use alias::AliasRows;

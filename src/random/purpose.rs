@@ -2,7 +2,7 @@
 
 /// What a draw is for, with the stage, rate group or action that it is for.
 ///
-/// The numbers that [`Purpose::code`] gives are part of every result: a new purpose takes a new number, and none is ever
+/// The numbers by which purposes enter keys are part of every result: a new purpose takes a new number, and none is ever
 /// given out again.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Purpose {

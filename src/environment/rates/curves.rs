@@ -79,7 +79,11 @@ impl RateCurves {
 fn read(table: &[[f64; 2]], located: &Located) -> f64 {
     let [here, next] = [table[located.knot], table[located.knot + 1]];
     let [w0, w1, w2, w3] = located.weights;
-    here[0] * w0 + here[1] * w1 + next[0] * w2 + next[1] * w3
+    let value = here[0] * w0 + here[1] * w1 + next[0] * w2 + next[1] * w3;
+    // Rounding may overstep a knot, and so the end of what the rate can be. No value is NaN, for which `max` and `min` would
+    // have to look.
+    let value = if value > here[0] { value } else { here[0] };
+    if value < next[0] { value } else { next[0] }
 }
 
 /// What value and slope at both ends of a step count for at a fraction of it.
@@ -111,7 +115,8 @@ fn table(rate: &YearlyRate, knots_per_unit: u32) -> Vec<[f64; 2]> {
         })
         .collect();
     for knot in 0..table.len() - 1 {
-        let most = 3.0 * (table[knot + 1][0] - table[knot][0]).max(0.0);
+        table[knot + 1][0] = table[knot + 1][0].max(table[knot][0]);
+        let most = 3.0 * (table[knot + 1][0] - table[knot][0]);
         table[knot][1] = table[knot][1].min(most);
         table[knot + 1][1] = table[knot + 1][1].min(most);
     }

@@ -5,9 +5,9 @@ mod curves;
 mod lognormal;
 
 pub use curves::{Located, RateCurves};
+pub use lognormal::Lognormal;
 
 use crate::num::beta::Beta;
-use lognormal::Lognormal;
 
 /// The distribution of a yearly rate.
 #[derive(Debug, Clone, Copy, PartialEq)]
