@@ -12,7 +12,7 @@ static ALLOCATOR: &StatsAlloc<System> = &INSTRUMENTED_SYSTEM;
 
 /// Every feature of the loop at once: stages, correlated weather, dispersal, density dependence, a ceiling elsewhere.
 fn study(horizon: u32, density: &str) -> Prepared {
-    let folder = tempfile::tempdir().unwrap();
+    let folder = tempfile::tempdir().expect("a temporary folder can be made");
     let features: Vec<String> = (0..12)
         .map(|i| {
             format!(
@@ -25,7 +25,7 @@ fn study(horizon: u32, density: &str) -> Prepared {
         })
         .collect();
     let patches = format!(r#"{{"type":"FeatureCollection","features":[{}]}}"#, features.join(","));
-    fs::write(folder.path().join("patches.geojson"), patches).unwrap();
+    fs::write(folder.path().join("patches.geojson"), patches).expect("a temporary file can be written");
     let text = format!(
         r#"
         title = "allocation"
@@ -60,7 +60,7 @@ fn study(horizon: u32, density: &str) -> Prepared {
         settlement = "shared"
         "#
     );
-    fs::write(folder.path().join("study.toml"), text).unwrap();
+    fs::write(folder.path().join("study.toml"), text).expect("a temporary file can be written");
     match prepare(&folder.path().join("study.toml"), Overrides::default()) {
         Ok(checked) => checked.value,
         Err(failure) => panic!("{failure}"),

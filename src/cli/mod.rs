@@ -75,7 +75,6 @@ pub fn main(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
 }
 
 /// Prints the answer to standard output. A reader that has gone away (`eyot run .. | head`) is not a failure.
-#[expect(clippy::print_stdout, reason = "the one place that prints answers")]
 fn say(text: &str) {
     use std::io::Write;
     let _ = writeln!(std::io::stdout(), "{}", text.trim_end_matches('\n'));

@@ -1,6 +1,7 @@
 //! Vital rates as the study states them: a mean, and how much it varies from year to year.
 
 use crate::mistake::Mistake;
+use crate::num::beta::largest_sd;
 use crate::study::{Item, NOT_NEGATIVE, Numbers, PROBABILITY, Said, Table};
 
 /// Rates that share a deviate within a patch and year.
@@ -36,11 +37,6 @@ pub struct Rate {
     pub group: RateGroup,
     /// its distribution over years
     pub law: Law,
-}
-
-/// The largest sd, exclusive, that a probability of mean `mean` can have: sqrt(m (1 - m)).
-pub(super) fn largest_sd(mean: f64) -> f64 {
-    (mean * (1.0 - mean)).sqrt()
 }
 
 impl Rate {

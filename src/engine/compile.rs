@@ -31,7 +31,7 @@ pub fn start_counts(
         let mut stages = match stage_counts(patch, &shares, &weights) {
             Ok(stages) => stages,
             Err(mistake) => {
-                mistakes.push(mistake);
+                mistakes.push(*mistake);
                 continue;
             }
         };
@@ -46,7 +46,7 @@ pub fn start_counts(
     if mistakes.is_empty() { Ok((counts, cut_warning(&cut).into_iter().collect())) } else { Err(mistakes) }
 }
 
-fn stage_counts(patch: &Patch, shares: &[f64], weights: &[f64]) -> Result<Vec<u32>, Mistake> {
+fn stage_counts(patch: &Patch, shares: &[f64], weights: &[f64]) -> Result<Vec<u32>, Box<Mistake>> {
     let total = match &patch.start {
         Start::ByStage(counts) => return Ok(counts.clone()),
         Start::Total(total) => *total,
@@ -54,7 +54,7 @@ fn stage_counts(patch: &Patch, shares: &[f64], weights: &[f64]) -> Result<Vec<u3
             let counted: f64 = shares.iter().zip(weights).map(|(share, weight)| share * weight).sum();
             if counted <= 0.0 {
                 let expected = "a stage with toward_capacity above 0, of which capacity could hold a share";
-                return Err(Mistake::new(patch.place.clone(), "start = { share_of_capacity = .. }", expected));
+                return Err(Mistake::new(patch.place.clone(), "start = { share_of_capacity = .. }", expected).into());
             }
             share * patch.capacity / counted
         }
@@ -62,7 +62,7 @@ fn stage_counts(patch: &Patch, shares: &[f64], weights: &[f64]) -> Result<Vec<u3
     let rounded = (total + 0.5).floor();
     if rounded > f64::from(u32::MAX) {
         let found = format!("{rounded} individuals to start with in {}", patch.name);
-        return Err(Mistake::new(patch.place.clone(), found, format!("at most {} in one patch", u32::MAX)));
+        return Err(Mistake::new(patch.place.clone(), found, format!("at most {} in one patch", u32::MAX)).into());
     }
     Ok(split_total(rounded as u32, shares))
 }

@@ -45,6 +45,9 @@ pub struct Prepared {
 ///
 /// # Errors
 /// All mistakes found; or the system's reason why the study cannot be read.
+///
+/// # Panics
+/// Never: whatever cannot be read leaves a mistake, which is returned first.
 pub fn prepare(file: &Path, overrides: Overrides) -> Result<Checked<Prepared>, Failure> {
     let document = Document::open(file)?;
     let read = read(&document, overrides);

@@ -77,8 +77,10 @@ impl Case {
 
     /// Reads and compiles the study over `horizon` years.
     pub(crate) fn prepare(&self, horizon: u32) -> Prepared {
-        let folder = tempfile::tempdir().unwrap();
-        let write = |name: &str, text: &str| fs::write(folder.path().join(name), text).unwrap();
+        let folder = tempfile::tempdir().expect("a temporary folder can be made");
+        let write = |name: &str, text: &str| {
+            fs::write(folder.path().join(name), text).expect("a temporary file can be written")
+        };
         write("patches.geojson", &self.geojson());
         write("start.csv", &self.start_table());
         let mut study = format!(
@@ -88,7 +90,7 @@ impl Case {
             self.replicates
         );
         if let Some(threshold) = self.quasi_extinction {
-            writeln!(study, "quasi_extinction = {threshold}").unwrap();
+            writeln!(study, "quasi_extinction = {threshold}").expect("a text takes what is written");
         }
         study.push_str(
             "[landscape]\npatches = \"patches.geojson\"\nid = \"patch\"\ncrs = \"metres\"\narea = { property = \"area\" }\n\
@@ -138,7 +140,7 @@ impl Case {
         let mut table = format!("patch,{counted}\n");
         for (position, point) in self.points.iter().enumerate() {
             let counts: Vec<String> = point.start.iter().map(u32::to_string).collect();
-            writeln!(table, "p{},{}", position + 1, counts.join(",")).unwrap();
+            writeln!(table, "p{},{}", position + 1, counts.join(",")).expect("a text takes what is written");
         }
         table
     }
@@ -147,7 +149,7 @@ impl Case {
         let mut table = String::from("from,to,probability\n");
         for (from, row) in self.arrivals.iter().enumerate() {
             for (to, probability) in row.iter().enumerate().filter(|(_, probability)| **probability > 0.0) {
-                writeln!(table, "p{},p{},{probability}", from + 1, to + 1).unwrap();
+                writeln!(table, "p{},p{},{probability}", from + 1, to + 1).expect("a text takes what is written");
             }
         }
         table

@@ -1,6 +1,8 @@
 //! Weather in the engine: chains under continuous weather, solved by quadrature over the deviate (converged to 1e-7); the
 //! growth of an unlimited population; the correlation of two patches under one climate.
 
+use eyot::num;
+
 use crate::support::{Case, Point, patch, sample_mean, sample_sd};
 
 fn beta_and_lognormal(survival_sd: f64, fecundity: f64, fecundity_sd: f64, rest: &str) -> String {
@@ -139,8 +141,8 @@ fn correlated_weather() {
 /// P(N_50 < N_0) = 0.638163, while the mean rises (Lewontin & Cohen 1969, PNAS 62, from memory).
 #[test]
 fn most_trajectories_fall_while_the_mean_rises() {
-    let mean = (-0.01_f64 + 0.02).exp();
-    let sd = mean * (0.04_f64.exp() - 1.0).sqrt();
+    let mean = num::exp(-0.01 + 0.02);
+    let sd = mean * num::exp_m1(0.04).sqrt();
     let life = format!(
         "[life_history]\nkind = \"counts\"\ngrowth = {{ mean = {mean}, sd = {sd} }}\n\
          density_dependence = {{ form = \"none\" }}\n"
@@ -148,11 +150,11 @@ fn most_trajectories_fall_while_the_mean_rises() {
     let seen = Case::new("lognormal growth", vec![patch(1e9, &[1_000_000])], &["all"], &life).run(50);
     let below = seen.tallies.records.iter().filter(|record| record.totals[50] < 1_000_000).count();
     seen.probability("below the start", below as u64, 0.638_163);
-    let logs: Vec<f64> = seen.tallies.records.iter().map(|record| (record.totals[50] as f64 / 1e6).ln()).collect();
+    let logs: Vec<f64> = seen.tallies.records.iter().map(|record| num::ln(record.totals[50] as f64 / 1e6)).collect();
     seen.mean("ln of relative numbers", sample_mean(&logs), -0.5, (50.0_f64 * 0.04).sqrt());
     let relative: Vec<f64> = seen.tallies.records.iter().map(|record| record.totals[50] as f64 / 1e6).collect();
     // Its exact sd is that of a lognormal with variance 2 on the log scale.
-    let sd = 1.648_721 * (2.0_f64.exp() - 1.0).sqrt();
+    let sd = 1.648_721 * num::exp_m1(2.0).sqrt();
     seen.mean("relative numbers", sample_mean(&relative), 1.648_721, sd);
 }
 
@@ -163,8 +165,8 @@ fn most_trajectories_fall_while_the_mean_rises() {
 #[test]
 fn moran_effect() {
     let r = 0.8_f64;
-    let mean = r.exp();
-    let sd = mean * (0.0025_f64.exp() - 1.0).sqrt();
+    let mean = num::exp(r);
+    let sd = mean * num::exp_m1(0.0025).sqrt();
     let reach = 1.0 / std::f64::consts::LN_2;
     let life = format!(
         "[life_history]\nkind = \"counts\"\ngrowth = {{ mean = {mean}, sd = {sd} }}\n\
