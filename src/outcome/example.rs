@@ -7,7 +7,7 @@ use super::Outcome;
 use crate::engine::{PatchTally, Record, Tallies};
 use crate::landscape::{Crs, Landscape, Patch, Start};
 use crate::mistake::Place;
-use crate::network::{Link, Network};
+use crate::network::{Capacity, Connectivity, Graph, Link, Network, Structure};
 use crate::study::{QuasiExtinction, Said};
 
 /// Individuals of each patch at census 0.
@@ -131,6 +131,20 @@ pub(crate) fn threshold() -> QuasiExtinction {
     QuasiExtinction { below: 5, stages: vec![adult] }
 }
 
+/// A structure of round numbers: the network's own graph, two shares and a loss each.
+pub(crate) fn structure() -> Structure {
+    let network = network();
+    Structure {
+        graph: Graph::new(3, network.links.iter().map(|link| (link.from, link.to))),
+        capacity: Capacity { value: 2.0, shares: vec![1.25, 0.5, 0.25] },
+        connectivity: Connectivity {
+            probability: 0.25,
+            equivalent_area_ha: 10.0,
+            loss_percent: Some(vec![75.0, 37.5, 12.5]),
+        },
+    }
+}
+
 pub(crate) fn outcome(threshold: Option<&QuasiExtinction>) -> Outcome {
-    Outcome::from_tallies(&tallies(), &landscape(), &network(), &STARTS, threshold, None).unwrap()
+    Outcome::from_tallies(&tallies(), &landscape(), &network(), &STARTS, threshold, Some(structure())).unwrap()
 }

@@ -146,7 +146,8 @@ fn the_map_of_patches_opens_with_types_and_crs() {
     let columns: Vec<&str> = header.lines().next().unwrap().split(',').collect();
     assert_eq!(properties.keys().collect::<Vec<_>>(), columns, "the same columns as the table");
     for (name, value) in properties.iter().filter(|(name, _)| !["patch", "role"].contains(&name.as_str())) {
-        assert!(value.is_number(), "{name} is {value}");
+        let is_flag = name == "splits_network";
+        assert!(if is_flag { value.is_boolean() } else { value.is_number() }, "{name} is {value}");
     }
     let GeometryValue::Polygon { coordinates } = &map.features[0].geometry.as_ref().unwrap().value else {
         panic!("a polygon")
