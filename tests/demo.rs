@@ -93,7 +93,7 @@ fn the_valley_is_as_its_page_says() {
     for (name, (feature, shape)) in &patches {
         let number = |key: &str| feature.property(key).unwrap().as_f64().unwrap();
         assert!((0.35..=1.0).contains(&number("quality")), "{name}");
-        assert!(number("count_2024") <= 2.0 * 14.0 * area_ha(shape) * number("quality"), "{name}");
+        assert!(number("count_2024") <= 3.0 * 4.0 * area_ha(shape) * number("quality"), "{name}");
         assert!(number("cost") > 0.0, "{name}");
         assert!(["trust", "farm", "parish"].contains(&feature.property("owner").unwrap().as_str().unwrap()), "{name}");
     }

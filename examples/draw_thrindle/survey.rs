@@ -10,7 +10,7 @@ use super::sites::{Form, Site};
 use super::{Rng, feature};
 
 /// What a hectare of the best habitat carries: breeding and young females.
-const FEMALES_PER_HA: f64 = 14.0;
+const FEMALES_PER_HA: f64 = 4.0;
 /// How full the patches were found, but for chance.
 const OCCUPANCY: f64 = 0.6;
 
