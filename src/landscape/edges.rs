@@ -11,6 +11,9 @@ use geo::{Coord, Intersects, Line, MultiPolygon};
 /// Edges to a box, and boxes to a box above it.
 const RUN: usize = 4;
 
+/// Outlines of up to so many edges are scanned, which beats walking their trees.
+const FEW: usize = 256;
+
 /// The edges of one or more closed rings, or a single point.
 #[derive(Debug, Clone)]
 pub(super) struct EdgeTree {
@@ -101,10 +104,61 @@ impl EdgeTree {
             return Some(0.0);
         }
         let beyond = (limit * limit).next_up();
-        let mut nearest = Nearest { first: &self.edges, second: &other.edges, best_squared: beyond };
-        // It breaks off where the distance is 0.
-        let _ = self.walk(other, &mut nearest);
-        (nearest.best_squared < beyond || limit.is_infinite()).then(|| nearest.best_squared.sqrt())
+        let best_squared = if self.edges.len() <= FEW && other.edges.len() <= FEW {
+            self.scan(other, beyond)
+        } else {
+            let mut nearest = Nearest { first: &self.edges, second: &other.edges, best_squared: beyond };
+            // It breaks off where the distance is 0.
+            let _ = self.walk(other, &mut nearest);
+            nearest.best_squared
+        };
+        (best_squared < beyond || limit.is_infinite()).then(|| best_squared.sqrt())
+    }
+
+    /// Square of the distance between the nearest edges of two outlines of at most [`FEW`] each, or `beyond` if it is not
+    /// below. Two vertices that face each other bound it from above; few edges are near enough to the other outline to do
+    /// better, and only those are paired.
+    fn scan(&self, other: &Self, beyond: f64) -> f64 {
+        let facing = self.vertex_near(other.bounds().centre());
+        let mut best_squared = beyond.min(squared(facing - other.vertex_near(facing)));
+        let (mut mine, mut theirs) = ([0; FEW], [0; FEW]);
+        let (mine, around_mine) = self.edges_near(&other.bounds(), best_squared, &mut mine);
+        let (theirs, _) = other.edges_near(&around_mine, best_squared, &mut theirs);
+        for i in mine {
+            let bounds = Bounds::of(&self.edges[*i]);
+            for j in theirs.iter().copied() {
+                if bounds.gap_squared(&Bounds::of(&other.edges[j])) < best_squared {
+                    best_squared = best_squared.min(distance_squared(&self.edges[*i], &other.edges[j]));
+                }
+            }
+        }
+        best_squared
+    }
+
+    fn vertex_near(&self, point: Coord<f64>) -> Coord<f64> {
+        let mut best = (f64::INFINITY, point);
+        for edge in &self.edges {
+            let away = squared(edge.start - point);
+            if away < best.0 {
+                best = (away, edge.start);
+            }
+        }
+        best.1
+    }
+
+    /// The edges whose boxes lie less than the root of `within_squared` from a box, and the box around those edges.
+    fn edges_near<'f>(&self, from: &Bounds, within_squared: f64, found: &'f mut [usize; FEW]) -> (&'f [usize], Bounds) {
+        let mut count = 0;
+        let mut around = Bounds::NOTHING;
+        for (position, edge) in self.edges.iter().enumerate() {
+            let bounds = Bounds::of(edge);
+            if bounds.gap_squared(from) < within_squared {
+                found[count] = position;
+                count += 1;
+                around = around.join(&bounds);
+            }
+        }
+        (&found[..count], around)
     }
 
     /// Whether the first vertex of any part of `other` lies inside this outline.
@@ -230,8 +284,12 @@ fn to_edge_squared(point: Coord<f64>, edge: &Line<f64>) -> f64 {
     } else {
         0.0
     };
-    let off = away - along * share;
-    off.x * off.x + off.y * off.y
+    squared(away - along * share)
+}
+
+/// Square of the length of a vector.
+fn squared(vector: Coord<f64>) -> f64 {
+    vector.x * vector.x + vector.y * vector.y
 }
 
 fn levels(edges: &[Line<f64>]) -> Vec<Vec<Bounds>> {
@@ -253,6 +311,16 @@ fn crosses_east(edge: &Line<f64>, point: Coord<f64>) -> bool {
 }
 
 impl Bounds {
+    /// A box that holds nothing and joins with any other to that other.
+    const NOTHING: Self = Self {
+        low: Coord { x: f64::INFINITY, y: f64::INFINITY },
+        high: Coord { x: f64::NEG_INFINITY, y: f64::NEG_INFINITY },
+    };
+
+    fn centre(&self) -> Coord<f64> {
+        (self.low + self.high) / 2.0
+    }
+
     fn of(edge: &Line<f64>) -> Self {
         let (a, b) = (edge.start, edge.end);
         Self { low: Coord { x: a.x.min(b.x), y: a.y.min(b.y) }, high: Coord { x: a.x.max(b.x), y: a.y.max(b.y) } }
