@@ -69,6 +69,7 @@ impl Neighbours {
     pub fn beyond_within(&self, patch: usize, beyond_km: f64, km: f64) -> Vec<(usize, f64)> {
         let mut found: Vec<(usize, f64)> = self
             .candidates(patch, km)
+            .filter(|other| !self.surely_within(patch, *other, beyond_km))
             .filter_map(|other| Some((other, self.distance_up_to(patch, other, km)?)))
             .filter(|(_, distance_km)| *distance_km > beyond_km && *distance_km <= km)
             .collect();
@@ -100,6 +101,11 @@ impl Neighbours {
                 found.into_iter().map(|result| class.patches[result.item as usize])
             })
             .filter(move |other| *other != patch)
+    }
+
+    /// Whether two patches lie within `km`, as far as their centroids and radii tell.
+    fn surely_within(&self, a: usize, b: usize, km: f64) -> bool {
+        self.between_centroids_km(a, b) + self.radii_km[a] + self.radii_km[b] <= km - SLACK_KM
     }
 
     /// The distance, if it is hardly more than `km`. The same whichever way round it is asked for.
