@@ -31,6 +31,7 @@ pub(super) fn main(arguments: &Arguments) -> Result<u8, Failure> {
     } else if !arguments.quiet {
         warn(&checked.warnings);
         say(&understood.text());
+        say(&format!("\nnothing is missing; next:  eyot run {}", super::quoted(&arguments.study)));
     }
     Ok(DONE)
 }

@@ -9,6 +9,7 @@ mod progress;
 mod run;
 
 use std::ffi::OsString;
+use std::path::Path;
 use std::process::ExitCode;
 
 use clap::{Parser, Subcommand};
@@ -84,6 +85,12 @@ fn say(text: &str) {
 fn complain(text: &str) {
     use std::io::Write;
     let _ = writeln!(std::io::stderr(), "{}", text.trim_end_matches('\n'));
+}
+
+/// A path as one would type it.
+fn quoted(path: &Path) -> String {
+    let text = path.display().to_string();
+    if text.contains(char::is_whitespace) { format!("\"{text}\"") } else { text }
 }
 
 fn warn(warnings: &[Mistake]) {

@@ -38,7 +38,7 @@ pub(super) fn main(arguments: &Arguments) -> Result<u8, Failure> {
     say(&format!(
         "written: {}\nnext: fill in the vital rates there, then  eyot check {}",
         study.display(),
-        study.display()
+        super::quoted(&study)
     ));
     Ok(DONE)
 }

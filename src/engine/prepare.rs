@@ -5,11 +5,11 @@ use std::path::Path;
 use super::compile::{compile, start_counts};
 use super::model::Model;
 use crate::demography::LifeHistory;
-use crate::environment::EnvironmentTable;
+use crate::environment::{Correlation, EnvironmentTable};
 use crate::landscape::{Landscape, LandscapeTable, Neighbours};
-use crate::mistake::{Checked, Failure, Mistake};
-use crate::network::{DispersalTable, Network};
-use crate::study::{Document, Effort, Input, Settings, Table};
+use crate::mistake::{Checked, Failure, Mistake, Place};
+use crate::network::{DispersalTable, Movement, Network};
+use crate::study::{Document, Effort, Input, Said, Settings, Table};
 
 /// What a call changes of a study.
 #[derive(Debug, Clone, Copy, Default)]
@@ -72,6 +72,10 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let landscape = landscape_table.and_then(|table| Landscape::read(&table, document, &stage_names));
     root.finish();
 
+    if let (Some(life_history), Some(environment)) = (&life_history, &environment) {
+        check_dispersal(document, life_history, &dispersal);
+        check_correlation(document, life_history, environment, landscape.as_ref());
+    }
     let mut settings = settings?;
     let (life_history, environment, landscape) = (life_history?, environment?, landscape?);
     let dispersal = match dispersal {
@@ -80,8 +84,6 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     };
     settings.seed = overrides.seed.unwrap_or(settings.seed);
     settings.effort = overrides.replicates.map_or(settings.effort, Effort::Replicates);
-    check_dispersal(document, &life_history, dispersal.as_ref());
-    check_correlation(document, &life_history, &environment, &landscape);
     let counted_stages = counted_stages(document, &settings, &life_history);
     let start = start(document, &landscape, &life_history);
     let network = link(document, &landscape, dispersal.as_ref());
@@ -100,6 +102,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         }
     };
     warn_of_growth(document, &life_history, &model);
+    warn_of_scales(document, &landscape, dispersal.as_ref(), &environment, &network);
     Some(Prepared {
         settings,
         landscape,
@@ -119,7 +122,8 @@ fn required<'d>(root: &Table<'d>, key: &str, meaning: &str) -> Option<Table<'d>>
     root.table(key)
 }
 
-fn check_dispersal(document: &Document, life_history: &LifeHistory, dispersal: Option<&DispersalTable>) {
+/// `dispersal` is `None` where the study has no such table, and holds `None` where the table is wrong.
+fn check_dispersal(document: &Document, life_history: &LifeHistory, dispersal: &Option<Option<DispersalTable>>) {
     match (&life_history.emigration_said, dispersal) {
         (Some(said), None) => {
             let expected = "a table [dispersal] that says where emigrants go";
@@ -139,9 +143,11 @@ fn check_correlation(
     document: &Document,
     life_history: &LifeHistory,
     environment: &EnvironmentTable,
-    landscape: &Landscape,
+    landscape: Option<&Landscape>,
 ) {
-    if life_history.varies() && landscape.patches.len() > 1 && environment.correlation.is_none() {
+    // A landscape that could not be read is taken for one of several patches.
+    let several = landscape.is_none_or(|landscape| landscape.patches.len() > 1);
+    if life_history.varies() && several && environment.correlation.is_none() {
         let varying = life_history.rates.iter().find(|rate| rate.sd > 0.0).map_or("a rate", |rate| &rate.address);
         let expected = format!(
             "correlation under [environment], since {varying} varies from year to year: \
@@ -199,6 +205,44 @@ fn link(document: &Document, landscape: &Landscape, dispersal: Option<&Dispersal
                 None
             }
         },
+    }
+}
+
+/// Warns where a distance is so wide beside the landscape that metres may have been meant for kilometres.
+fn warn_of_scales(
+    document: &Document,
+    landscape: &Landscape,
+    dispersal: Option<&DispersalTable>,
+    environment: &EnvironmentTable,
+    network: &Network,
+) {
+    let [east, north] = landscape.extent_km();
+    let extent_km = east.max(north);
+    let warn = |place: &Place, found: String, note: String| {
+        let warning = Mistake::new(place.clone(), found, note);
+        document.warning(warning.advise("look at the unit: kilometres, not metres"));
+    };
+    if landscape.patches.len() < 2 {
+        return;
+    }
+    if let Some(DispersalTable { movement: Movement::Kernel(by), place, .. }) = dispersal {
+        let mean_km = by.kernel.mean_km();
+        if mean_km > 3.0 * extent_km {
+            let note = format!("more than three times as far as the landscape is wide ({extent_km:.1} km)");
+            warn(place, format!("a mean dispersal distance of {mean_km} km"), note);
+        }
+    }
+    if let Some(Said { value: Correlation::Reach { reach_km, .. }, place, .. }) = &environment.correlation
+        && *reach_km > 100.0 * extent_km
+    {
+        let note = format!("a hundred times as far as the landscape is wide ({extent_km:.1} km): all years are alike");
+        warn(place, format!("correlation over {reach_km} km"), note);
+    }
+    if let Some(dispersal) = dispersal
+        && network.lost.iter().all(|lost| *lost > 0.99)
+    {
+        let found = "emigrants of every patch die on the way or land nowhere, more than 99 in 100";
+        document.warning(Mistake::new(dispersal.place.clone(), found, "the network plays next to no part"));
     }
 }
 

@@ -6,7 +6,7 @@ use serde_json::{Map, Value};
 
 use super::findings::Findings;
 use super::geojson::{features_of, parse};
-use crate::mistake::Failure;
+use crate::mistake::{Failure, Mistake, Place};
 use crate::study::Document;
 
 /// What a file of patches holds.
@@ -54,7 +54,13 @@ impl Glance {
     /// # Errors
     /// If the file cannot be read, is not JSON, or is no FeatureCollection with at least one feature.
     pub fn at(file: &Path) -> Result<Self, Failure> {
-        let bytes = std::fs::read(file).map_err(|error| Failure::system(file, "read", error))?;
+        let bytes = std::fs::read(file).map_err(|error| match error.kind() {
+            std::io::ErrorKind::NotFound => {
+                let mistake = Mistake::new(Place::file(file), "no such file", "a GeoJSON file of patches");
+                mistake.advise("check the path; export the layer of patches from the GIS as GeoJSON").into()
+            }
+            _ => Failure::system(file, "read", error),
+        })?;
         let document = Document::parse(file, String::new());
         let findings = Findings::new(&document);
         let features = parse(file, &bytes, &findings).and_then(|mut root| features_of(file, &mut root, &findings));

@@ -61,3 +61,15 @@ pub struct Landscape {
     /// whether distances run between centroids instead of nearest edges
     pub between_centroids: bool,
 }
+
+impl Landscape {
+    /// How far the patches reach from west to east and from south to north, in kilometres of the plane.
+    pub fn extent_km(&self) -> [f64; 2] {
+        [0, 1].map(|axis| {
+            let edge =
+                |sign: f64| self.patches.iter().map(move |patch| patch.centroid_km[axis] + sign * patch.radius_km);
+            let (low, high) = (edge(-1.0).fold(f64::INFINITY, f64::min), edge(1.0).fold(f64::NEG_INFINITY, f64::max));
+            high - low
+        })
+    }
+}

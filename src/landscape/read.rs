@@ -2,7 +2,7 @@
 
 use std::path::Path;
 
-use geo::Geometry;
+use geo::{Area, Geometry};
 use rayon::prelude::*;
 
 use super::findings::Findings;
@@ -15,7 +15,10 @@ use super::table::LandscapeTable;
 use super::values::{self, Values};
 use super::{degrees, overlap};
 use crate::mistake::{Mistake, Place};
-use crate::study::Document;
+use crate::study::{Document, Said};
+
+/// A stated area more than so many times the outline's, or less than that part of it, is odd.
+const FARTHEST_RATIO: f64 = 5.0;
 
 /// Beyond this width in kilometres the plane strains distances by more than a thousandth.
 const WIDEST_KM: f64 = 1000.0;
@@ -62,6 +65,9 @@ fn read(
     let mut patches = patches?;
     patches.sort_by(|a, b| a.name.cmp(&b.name));
     values::check_totals(table, file, &patches, findings);
+    if let Some(property) = &table.area {
+        warn_of_stated_areas(property, &patches, findings);
+    }
     overlap::warn_of_overlaps(&patches, findings);
     let patches_ha = round_area_ha(patches.iter().map(|patch| patch.area_ha).sum());
     Some(Landscape {
@@ -155,6 +161,25 @@ fn warn_of_width<'m>(file: &Path, crs: Crs, measured: impl Iterator<Item = &'m M
         let expected = format!("beyond {WIDEST_KM} km distances may be wrong by more than 0.1 %; areas stay right");
         findings.warning("width", Mistake::new(Place::file(file), found, expected));
     }
+}
+
+/// Warns where a stated area is far from what the outline measures: square metres, or coordinates that are swapped.
+fn warn_of_stated_areas(property: &Said<String>, patches: &[Patch], findings: &Findings<'_>) {
+    let outline_ha = |patch: &Patch| 100.0 * patch.outline_km.unsigned_area();
+    let off = |patch: &&Patch| {
+        let ratio = patch.area_ha / outline_ha(patch);
+        !patch.outline_km.0.is_empty() && !(1.0 / FARTHEST_RATIO..=FARTHEST_RATIO).contains(&ratio)
+    };
+    let mut wrong = patches.iter().filter(off);
+    let Some(first) = wrong.next() else { return };
+    let more = match wrong.count() {
+        0 => String::new(),
+        more => format!(", and {more} more patches like this"),
+    };
+    let found = format!("{} = {} ha{more}", property.value, first.area_ha);
+    let note = format!("the outline measures {:.2} ha; the stated area is used", outline_ha(first));
+    let warning = Mistake::new(first.place.clone(), found, note);
+    findings.warning("stated area", warning.advise("look at the unit, hectares, and at the order of the coordinates"));
 }
 
 /// The area that the study states, or else that of the patches.

@@ -27,8 +27,8 @@ impl<'a> Notes<'a> {
     /// Patches whose nearest target lies beyond `far_km`, three mean distances, under `shared`.
     pub(super) fn far(&mut self, patches: &[usize], far_km: f64) {
         let found = format!("no target within three mean distances ({far_km} km) of");
-        let advice =
-            "state path_mortality_per_km or max_km, or use settlement = \"open\", which loses those who land nowhere";
+        let advice = "if that is too generous, raise path_mortality_per_km, set max_km, or use settlement = \"open\", which \
+                      loses those who land nowhere";
         self.add(
             patches,
             &found,

@@ -64,18 +64,22 @@ impl DispersalTable {
                 "{ shape = \"exponential\", mean_km = 1.4 } or the like, or { table = \"file.csv\" }",
             );
         }
-        let keys = table.table("kernel")?;
-        let movement = if keys.has("table") { read_measured(&table, keys) } else { read_kernel(&table, keys) };
+        let movement = match table.table("kernel") {
+            Some(keys) if keys.has("table") => read_measured(&table, keys),
+            Some(keys) => read_kernel(&table, Some(keys)),
+            None => read_kernel(&table, None),
+        };
         warn_of_an_idle_exponent(&table, movement.as_ref());
         table.finish();
         Some(Self { movement: movement?, area_exponent: area_exponent?, place })
     }
 }
 
-fn read_kernel(table: &Table<'_>, keys: Table<'_>) -> Option<Movement> {
-    let kernel = Kernel::read(&keys);
+/// Without the kernel's own keys the others are still read, so that all that is missing is named at once.
+fn read_kernel(table: &Table<'_>, keys: Option<Table<'_>>) -> Option<Movement> {
+    let kernel = keys.as_ref().and_then(Kernel::read);
     // A shape that is not known has keys that are not known either.
-    if kernel.is_some() {
+    if let (Some(keys), true) = (keys, kernel.is_some()) {
         keys.finish();
     }
     if !table.has("settlement") {

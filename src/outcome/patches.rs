@@ -84,7 +84,7 @@ pub struct PlaceInNetwork {
     pub component: u32,
     /// whether its loss splits that component
     pub splits: bool,
-    /// its share of the metapopulation capacity
+    /// its share of the metapopulation capacity, 0 to 1; 0 where there is none
     pub capacity_share: f64,
     /// percentage of the probability of connectivity that goes with it; `None` in networks too large for it
     pub connectivity_loss_percent: Option<f64>,
@@ -92,10 +92,11 @@ pub struct PlaceInNetwork {
 
 impl PlaceInNetwork {
     fn new(structure: &Structure, patch: usize) -> Self {
+        let whole = structure.capacity.value;
         Self {
             component: structure.graph.component[patch] + 1,
             splits: structure.graph.cut_patches.binary_search(&patch).is_ok(),
-            capacity_share: structure.capacity.shares[patch],
+            capacity_share: if whole > 0.0 { structure.capacity.shares[patch] / whole } else { 0.0 },
             connectivity_loss_percent: structure.connectivity.loss_percent.as_ref().map(|losses| losses[patch]),
         }
     }

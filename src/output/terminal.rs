@@ -72,7 +72,7 @@ fn customary_words(customary: &Customary) -> String {
         Standing::Below => "missed",
         Standing::NotToldApart => "not told apart by so many replicates",
     };
-    format!("{:.0} % over {CUSTOMARY_YEARS} years, a habit of the trade: {standing}", 100.0 * CUSTOMARY_PERSISTENCE)
+    format!("{:.0} % over {CUSTOMARY_YEARS} years: {standing}", 100.0 * CUSTOMARY_PERSISTENCE)
 }
 
 fn years(outcome: &Outcome) -> String {

@@ -34,6 +34,7 @@ pub struct Understood {
 struct Landscape {
     patches: usize,
     coordinates: &'static str,
+    extent_km: [f64; 2],
     area_ha: f64,
     smallest_ha: f64,
     largest_ha: f64,
@@ -142,6 +143,7 @@ impl Landscape {
                 Crs::Degrees => "longitude and latitude",
                 Crs::Metres => "planar metres",
             },
+            extent_km: prepared.landscape.extent_km(),
             area_ha: areas().sum(),
             smallest_ha: areas().fold(f64::INFINITY, f64::min),
             largest_ha: areas().fold(0.0, f64::max),
@@ -154,6 +156,14 @@ impl Landscape {
     fn text(&self) -> String {
         let rows = vec![
             row("patches", &format!("{}, in {}", grouped(self.patches as u64), self.coordinates)),
+            row(
+                "extent",
+                &format!(
+                    "{} km east to west, {} km north to south",
+                    amount(self.extent_km[0]),
+                    amount(self.extent_km[1])
+                ),
+            ),
             row(
                 "area",
                 &format!("{} ha; {} to {} ha a patch", amount(self.area_ha), ha(self.smallest_ha), ha(self.largest_ha)),
@@ -198,11 +208,17 @@ impl Network {
                 "links",
                 &format!("{}{median}; {}", grouped(self.links as u64), counted(self.components as u64, "component")),
             ),
-            row("lost on the way", &format!("{:.1} % of emigrants, mean over patches", 100.0 * self.mean_lost_share)),
+            row(
+                "emigrants lost",
+                &format!("{:.1} % die on the way or land nowhere, mean over patches", 100.0 * self.mean_lost_share),
+            ),
             row("weakest links cut", &format!("at most {:.4} % of those who land", 100.0 * self.largest_cut_share)),
             row("patches that hold it together", &names(&self.patches_whose_loss_splits)),
             row("links that hold it together", &names(&self.links_whose_loss_splits)),
-            row("metapopulation capacity", &format!("{:.4} (Hanski & Ovaskainen 2000)", self.metapopulation_capacity)),
+            row(
+                "metapopulation capacity",
+                &format!("{} (Hanski & Ovaskainen 2000)", amount(self.metapopulation_capacity)),
+            ),
             row(
                 "probability of connectivity",
                 &format!(

@@ -57,14 +57,15 @@ pub(super) fn mean(estimate: &Estimate) -> String {
     format!("{} ({} to {})", amount(estimate.value), amount(estimate.low), amount(estimate.high))
 }
 
-/// An amount of individuals or the like: one decimal below 100, whole above, as a power of ten from a million.
+/// An amount of individuals or the like: two digits below 1, one decimal below 100, whole above, as a power of ten from a
+/// thousand million.
 pub(super) fn amount(number: f64) -> String {
     match number.abs() {
-        size if size < 99.95 => {
-            let text = format!("{number:.1}");
-            if text == "-0.0" { "0.0".to_owned() } else { text }
-        }
-        size if size < 1e6 => {
+        size if size < 0.0005 => "0.0".to_owned(),
+        size if size < 0.0995 => format!("{number:.3}"),
+        size if size < 0.995 => format!("{number:.2}"),
+        size if size < 99.95 => format!("{number:.1}"),
+        size if size < 1e9 => {
             let sign = if number < 0.0 { "-" } else { "" };
             format!("{sign}{}", grouped(size.round() as u64))
         }
@@ -113,8 +114,9 @@ mod tests {
 
     #[test]
     fn amounts_are_short() {
-        let shown: Vec<String> = [0.0, -0.04, 12.34, 99.94, 99.96, -1234.5, 999_999.0, 2.5e9].map(amount).into();
-        assert_eq!(shown, ["0.0", "0.0", "12.3", "99.9", "100", "-1,235", "999,999", "2.50e9"]);
+        let shown: Vec<String> =
+            [0.0, -0.0001, -0.04, 0.234, 12.34, 99.94, 99.96, -1234.5, 2_583_450.0, 2.5e9].map(amount).into();
+        assert_eq!(shown, ["0.0", "0.0", "-0.040", "0.23", "12.3", "99.9", "100", "-1,235", "2,583,450", "2.50e9"]);
         assert_eq!([0, 999, 1000, 1_234_567].map(grouped), ["0", "999", "1,000", "1,234,567"]);
         assert_eq!((counted(1, "year"), counted(1200, "year")), ("1 year".to_owned(), "1,200 years".to_owned()));
     }

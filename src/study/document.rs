@@ -1,6 +1,7 @@
 //! The TOML document as a tree of owned nodes, each with its place, and the mistakes found while walking it.
 
 use std::cell::RefCell;
+use std::collections::BTreeSet;
 use std::ops::Range;
 use std::path::{Path, PathBuf};
 
@@ -59,6 +60,9 @@ pub(super) enum Value {
     Faulty,
 }
 
+/// The most faults of the TOML itself that are shown.
+const FAULTS_SHOWN: usize = 8;
+
 impl Document {
     /// Reads and parses a study file. Faults of the TOML itself are kept with the other mistakes.
     ///
@@ -97,10 +101,34 @@ impl Document {
             warnings: RefCell::default(),
             inputs: RefCell::new(vec![study]),
         };
-        for fault in faults {
-            document.mistake(document.fault(&fault));
-        }
+        document.note_faults(&faults);
         document
+    }
+
+    /// Notes the faults of the TOML, one a line, since one slip often makes several.
+    fn note_faults(&self, faults: &[toml::de::Error]) {
+        if !faults.is_empty() && self.text.trim_start().starts_with('{') {
+            let mistake = Mistake::new(Place::file(&self.file), "this looks like JSON", "a study file in TOML");
+            self.mistake(mistake.advise("name the study, not the file of patches"));
+            return;
+        }
+        let mut lines = BTreeSet::new();
+        for fault in faults {
+            let mut mistake = self.fault(fault);
+            let line = line_of(&mistake.place);
+            if !lines.insert(line) {
+                continue;
+            }
+            if lines.len() > FAULTS_SHOWN {
+                let more = format!("more of the like from line {line} on");
+                self.mistake(Mistake::new(mistake.place, more, "TOML"));
+                return;
+            }
+            if has_decimal_comma(self.text.lines().nth(line - 1).unwrap_or_default()) {
+                mistake = mistake.advise("write decimals with a point: 0.66, not 0,66");
+            }
+            self.mistake(mistake);
+        }
     }
 
     /// The name of the file as it was given.
@@ -221,6 +249,16 @@ fn place(file: &Path, text: &str, line_starts: &[usize], offset: usize) -> Place
 fn line_starts(text: &str) -> Vec<usize> {
     let first = if text.starts_with('\u{feff}') { '\u{feff}'.len_utf8() } else { 0 };
     std::iter::once(first).chain(text.match_indices('\n').map(|(at, _)| at + 1)).collect()
+}
+
+fn line_of(place: &Place) -> usize {
+    if let Place::Text { line, .. } = place { *line } else { 1 }
+}
+
+/// Whether a line has a digit on either side of a comma, outside of lists, which have such commas by right.
+fn has_decimal_comma(line: &str) -> bool {
+    let digit = |byte: u8| byte.is_ascii_digit();
+    !line.contains('[') && line.as_bytes().windows(3).any(|w| digit(w[0]) && w[1] == b',' && digit(w[2]))
 }
 
 fn sha256(bytes: &[u8]) -> String {

@@ -30,15 +30,13 @@ struct Scale {
     at_capacity: f64,
     /// ln of growth at low numbers, above 0
     log_growth: f64,
-    /// whether the life history is a model of counts
-    counts: bool,
 }
 
 type MakeCurve = fn(&Table<'_>, Scale) -> Option<Arc<dyn Curve>>;
 
 /// The forms that multiply rates, by the words that the study uses.
 const CURVES: &[(&str, MakeCurve)] =
-    &[("beverton-holt", beverton_holt::make), ("ricker", ricker::make), ("theta-logistic", theta_logistic::make)];
+    &[("beverton-holt", beverton_holt::make), ("ricker", ricker::make), (theta_logistic::FORM, theta_logistic::make)];
 
 /// How numbers are held near capacity.
 #[derive(Debug, Clone)]
@@ -70,12 +68,12 @@ impl Density {
         const KEY: &str = "density_dependence";
         let Some(table) = life_history.table(KEY) else {
             if !life_history.has(KEY) {
-                let expected = format!("{{ form = \"..\" }}, one of {}", forms().join(", "));
+                let expected = format!("{{ form = \"..\" }}, one of {}", forms(counts).join(", "));
                 life_history.missing(KEY, expected);
             }
             return None;
         };
-        let form = read_form(&table);
+        let form = read_form(&table, counts);
         let acted_on = read_acts_on(&table, counts);
         let result = match (form, acted_on, matrix) {
             (Some(form), Some((on_survival, on_fecundity)), Some(matrix)) => {
@@ -89,7 +87,7 @@ impl Density {
                 };
                 match CURVES.iter().find(|(name, _)| *name == form.value) {
                     None => refuse_curve_keys(&table).then_some(plain),
-                    Some((_, make)) => plain.scaled(&table, &form, *make, matrix, counts),
+                    Some((_, make)) => plain.scaled(&table, &form, *make, matrix),
                 }
             }
             _ => {
@@ -108,7 +106,6 @@ impl Density {
         form: &Said<String>,
         make: MakeCurve,
         matrix: &ProjectionMatrix,
-        counts: bool,
     ) -> Option<Self> {
         let growth = matrix.growth();
         let fixed = matrix.scaled(if self.on_survival { 0.0 } else { 1.0 }, if self.on_fecundity { 0.0 } else { 1.0 });
@@ -120,7 +117,7 @@ impl Density {
             return None;
         }
         let at_capacity = if idle { 1.0 } else { multiplier_at_capacity(matrix, self.on_survival, self.on_fecundity) };
-        let curve = make(table, Scale { at_capacity, log_growth: crate::num::ln(growth.max(1.0)), counts })?;
+        let curve = make(table, Scale { at_capacity, log_growth: crate::num::ln(growth.max(1.0)) })?;
         if !idle {
             self.curve = Some(curve);
             self.at_capacity = Some(at_capacity);
@@ -150,22 +147,25 @@ fn multiplier_at_capacity(matrix: &ProjectionMatrix, on_survival: bool, on_fecun
     }
 }
 
-fn forms() -> Vec<&'static str> {
-    ["none", "ceiling"].into_iter().chain(CURVES.iter().map(|(name, _)| *name)).collect()
+/// The forms that a life history can have.
+fn forms(counts: bool) -> Vec<&'static str> {
+    let curves = CURVES.iter().map(|(name, _)| *name).filter(|name| counts || *name != theta_logistic::FORM);
+    ["none", "ceiling"].into_iter().chain(curves).collect()
 }
 
-fn read_form(table: &Table<'_>) -> Option<Said<String>> {
+fn read_form(table: &Table<'_>, counts: bool) -> Option<Said<String>> {
+    let forms = forms(counts);
     let Some(form) = table.text("form") else {
         if !table.has("form") {
-            table.missing("form", format!("one of {}", forms().join(", ")));
+            table.missing("form", format!("one of {}", forms.join(", ")));
         }
         return None;
     };
-    if forms().contains(&form.value.as_str()) {
+    if forms.contains(&form.value.as_str()) {
         return Some(form);
     }
-    let mut mistake = form.mistake(format!("one of {}", forms().join(", ")));
-    if let Some(near) = nearest_word(&form.value, forms()) {
+    let mut mistake = form.mistake(format!("one of {}", forms.join(", ")));
+    if let Some(near) = nearest_word(&form.value, forms.iter().copied()) {
         mistake = mistake.advise(format!("write \"{near}\""));
     }
     table.document().mistake(mistake);

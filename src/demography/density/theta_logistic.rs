@@ -6,6 +6,9 @@ use super::{Curve, Scale};
 use crate::num;
 use crate::study::{POSITIVE, Table};
 
+/// The word that the study uses.
+pub(super) const FORM: &str = "theta-logistic";
+
 #[derive(Debug)]
 struct ThetaLogistic {
     /// ln of mean growth
@@ -28,10 +31,6 @@ pub(super) fn make(table: &Table<'_>, scale: Scale) -> Option<Arc<dyn Curve>> {
     let theta = table.number("theta", POSITIVE);
     if !table.has("theta") {
         table.missing("theta", "a number above 0: below 1 crowding bites early, above 1 late");
-    }
-    if !scale.counts {
-        table.mistake(table.address("form"), "theta-logistic in a life history of kind = \"counts\" only");
-        return None;
     }
     Some(Arc::new(ThetaLogistic { log_growth: scale.log_growth, theta: theta?.value }))
 }
