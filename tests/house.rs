@@ -85,6 +85,19 @@ fn the_yearly_loop_knows_no_strings_files_locks_or_clocks() {
     }
 }
 
+/// What the loop calls, beside what is read and compiled in the same files.
+#[test]
+fn nothing_that_the_loop_calls_locks_or_hashes() {
+    for room in ["engine", "demography", "environment", "random"] {
+        for file in sources(&src().join(room)) {
+            let code = code(&file);
+            for word in ["HashMap", "HashSet", "Mutex", "RwLock", "RefCell", "std::fs", "std::time"] {
+                assert!(!code.contains(word), "{} has {word}", file.display());
+            }
+        }
+    }
+}
+
 #[test]
 fn only_the_commands_print_and_exit() {
     for file in sources(&src()) {

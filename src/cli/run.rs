@@ -111,7 +111,7 @@ fn simulate(prepared: &Prepared, arguments: &Arguments) -> std::io::Result<Run> 
     let threads = arguments.threads.map_or(0, usize::from);
     let precise = |precision: f64| {
         move |tallies: &Tallies| {
-            Estimate::proportion(tallies.persisting(), tallies.n_replicates() as u64).is_within(precision)
+            Estimate::proportion(tallies.persisting, tallies.n_replicates() as u64).is_within(precision)
         }
     };
     let show = |done: u32, planned: Option<u32>| bar.show(done, planned);

@@ -61,6 +61,11 @@ impl LifeHistory {
         self.rates.iter().any(|rate| rate.sd > 0.0)
     }
 
+    /// Generation time in years, where stages give it: see [`ProjectionMatrix::generation_time`].
+    pub fn generation_time(&self) -> Option<f64> {
+        if self.stages.len() > 1 { self.matrix.generation_time() } else { None }
+    }
+
     /// The names of the stages.
     pub fn stage_names(&self) -> Vec<String> {
         self.stages.iter().map(|stage| stage.name.clone()).collect()

@@ -62,12 +62,19 @@ impl Matrix {
 
     /// The dominant eigenvalue (spectral radius) and its right eigenvector, summing to 1.
     ///
-    /// The matrix plus the identity has the same eigenvectors and, having a positive diagonal, no other eigenvalue as
-    /// large: its 2^64th power, by squaring, holds nothing but the dominant direction, even where the matrix cycles.
+    /// The matrix plus a multiple of the identity has the same eigenvectors and, having a positive diagonal, no other
+    /// eigenvalue as large: its 2^64th power, by squaring, holds nothing but the dominant direction, even where the matrix
+    /// cycles. The multiple is as large as the eigenvalue may be: the root of the product of the largest sums of a row and of
+    /// a column, at least 1.
     pub fn dominant(&self) -> (f64, Vec<f64>) {
+        let largest_sum = |matrix: &Self| {
+            let rows = matrix.cells.chunks(matrix.size).map(|row| row.iter().sum::<f64>());
+            rows.fold(0.0, f64::max)
+        };
+        let shift = (largest_sum(self).sqrt() * largest_sum(&self.transposed()).sqrt()).max(1.0);
         let mut power = self.clone();
         for stage in 0..self.size {
-            power[(stage, stage)] += 1.0;
+            power[(stage, stage)] += shift;
         }
         for _ in 0..64 {
             power = power.squared();

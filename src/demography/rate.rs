@@ -1,7 +1,7 @@
 //! Vital rates as the study states them: a mean, and how much it varies from year to year.
 
 use crate::mistake::Mistake;
-use crate::num::beta::largest_sd;
+use crate::num::beta::{Beta, largest_sd};
 use crate::study::{Item, NOT_NEGATIVE, Numbers, PROBABILITY, Said, Table};
 
 /// Rates that share a deviate within a patch and year.
@@ -81,9 +81,12 @@ impl Rate {
 fn numbers(law: Law) -> Numbers {
     match law {
         Law::Beta => PROBABILITY,
-        Law::Lognormal => NOT_NEGATIVE,
+        Law::Lognormal => Numbers { high: MOST_A_YEAR, ..NOT_NEGATIVE },
     }
 }
+
+/// The most young of one individual in a year that are believed, or the most growth: a sturgeon has a few million eggs.
+const MOST_A_YEAR: f64 = 1e9;
 
 /// The mistake of an sd that no distribution with this mean and law can have, if it is one.
 pub(super) fn impossible_sd(sd: &Said<f64>, mean: f64, law: Law) -> Option<Mistake> {
@@ -97,6 +100,30 @@ pub(super) fn impossible_sd(sd: &Said<f64>, mean: f64, law: Law) -> Option<Mista
         Law::Lognormal if sd.value > 0.0 && mean <= 0.0 => {
             Some(sd.mistake("0, since a mean of 0 cannot vary").advise("leave the sd out"))
         }
+        _ if sd.value > 0.0 && sd.value < LEAST_VARIATION * spread(mean, law) => {
+            let expected = format!("0, or at least {LEAST_VARIATION} of the mean");
+            Some(sd.mistake(expected).advise("leave the sd out: so little cannot be seen"))
+        }
+        Law::Lognormal if sd.value > MOST_VARIATION * mean => {
+            let expected = format!("at most {MOST_VARIATION} times the mean {mean}");
+            Some(sd.mistake(expected).advise("give the sd between years of the rate itself, in its own unit"))
+        }
+        Law::Beta if sd.value > 0.0 && Beta::with_mean_and_sd(mean, sd.value).is_none() => {
+            Some(sd.mistake(format!("an sd that a probability of mean {mean} can have")))
+        }
         _ => None,
+    }
+}
+
+/// The least sd above 0, as a share of the mean (or of what a probability lacks of 1): the beta distribution becomes
+/// too steep to be tabulated below.
+const LEAST_VARIATION: f64 = 1e-5;
+/// The largest sd of a number of individuals, in means.
+const MOST_VARIATION: f64 = 1000.0;
+
+fn spread(mean: f64, law: Law) -> f64 {
+    match law {
+        Law::Beta => mean.min(1.0 - mean),
+        Law::Lognormal => mean,
     }
 }

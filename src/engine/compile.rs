@@ -101,11 +101,11 @@ pub(super) fn compile(
         capacity: landscape.patches.iter().map(|patch| patch.capacity).collect(),
         toward_capacity: life_history.stages.iter().map(|stage| stage.toward_capacity).collect(),
         local: life_history.model.clone(),
-        crowding: density.curve.clone().map(|curve| Crowding {
-            curve,
+        crowding: Crowding {
+            curve: density.curve.clone(),
             on_survival: density.on_survival,
             on_fecundity: density.on_fecundity,
-        }),
+        },
         ceiling: density.ceiling,
         movement: Movement::compile(network, &life_history.stages),
         threshold: settings.quasi_extinction.as_ref().map(|threshold| Threshold {

@@ -19,7 +19,8 @@ pub struct Threshold {
 /// How numbers press on rates.
 #[derive(Debug, Clone)]
 pub(super) struct Crowding {
-    pub(super) curve: Arc<dyn Curve>,
+    /// none where the form multiplies nothing, or has nothing to scale
+    pub(super) curve: Option<Arc<dyn Curve>>,
     pub(super) on_survival: bool,
     pub(super) on_fecundity: bool,
 }
@@ -39,7 +40,7 @@ pub struct Model {
     /// what an individual of each stage counts toward capacity
     pub(super) toward_capacity: Vec<f64>,
     pub(super) local: Arc<dyn LocalModel>,
-    pub(super) crowding: Option<Crowding>,
+    pub(super) crowding: Crowding,
     /// whether surplus over capacity is removed at the end of the year
     pub(super) ceiling: bool,
     pub(super) rates: Rates,

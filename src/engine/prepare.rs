@@ -72,22 +72,21 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let landscape = landscape_table.and_then(|table| Landscape::read(&table, document, &stage_names));
     root.finish();
 
+    // Every check is made whose own inputs could be read, so that one run shows as much as it can.
     if let (Some(life_history), Some(environment)) = (&life_history, &environment) {
         check_dispersal(document, life_history, &dispersal);
         check_correlation(document, life_history, environment, landscape.as_ref());
     }
-    let mut settings = settings?;
-    let (life_history, environment, landscape) = (life_history?, environment?, landscape?);
-    let dispersal = match dispersal {
-        Some(read) => Some(read?),
-        None => None,
-    };
-    settings.seed = overrides.seed.unwrap_or(settings.seed);
-    settings.effort = overrides.replicates.map_or(settings.effort, Effort::Replicates);
-    let counted_stages = counted_stages(document, &settings, &life_history);
-    let start = start(document, &landscape, &life_history);
-    let network = link(document, &landscape, dispersal.as_ref());
+    let settings = settings.and_then(|settings| override_settings(document, settings, overrides));
+    let counted_stages = both(&settings, &life_history).and_then(|(a, b)| counted_stages(document, a, b));
+    let start = both(&landscape, &life_history).and_then(|(a, b)| start(document, a, b));
+    let network = landscape.as_ref().and_then(|landscape| match &dispersal {
+        Some(table) => table.as_ref().and_then(|table| link(document, landscape, table)),
+        None => Some(Network::unlinked(landscape.patches.len())),
+    });
+    let (settings, life_history, environment, landscape) = (settings?, life_history?, environment?, landscape?);
     let (counted_stages, start, network) = (counted_stages?, start?, network?);
+    let dispersal = dispersal.flatten();
     if !document.is_clean() {
         return None;
     }
@@ -102,6 +101,9 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         }
     };
     warn_of_growth(document, &life_history, &model);
+    warn_of_density(document, &life_history);
+    warn_of_generation(document, &settings, &life_history);
+    warn_of_lost_emigrants(document, &life_history, &landscape, &network, &model);
     warn_of_scales(document, &landscape, dispersal.as_ref(), &environment, &network);
     Some(Prepared {
         settings,
@@ -113,6 +115,30 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         model,
         inputs: document.inputs(),
     })
+}
+
+fn both<'a, A, B>(a: &'a Option<A>, b: &'a Option<B>) -> Option<(&'a A, &'a B)> {
+    a.as_ref().zip(b.as_ref())
+}
+
+/// The most bytes that totals by replicate and year may take.
+const MOST_BYTES: u64 = 8 << 30;
+
+/// Applies what the call changes, and refuses more replicates than their totals could be kept of.
+fn override_settings(document: &Document, mut settings: Settings, overrides: Overrides) -> Option<Settings> {
+    settings.seed = overrides.seed.unwrap_or(settings.seed);
+    settings.effort = overrides.replicates.map_or(settings.effort, Effort::Replicates);
+    let most = MOST_BYTES / 8 / (u64::from(settings.horizon) + 1);
+    if let Effort::Replicates(replicates) = settings.effort
+        && u64::from(replicates) > most
+    {
+        let found = format!("{replicates} replicates of {} years", settings.horizon);
+        let expected = format!("at most {most} replicates over such a horizon: each year's total of each is kept");
+        let place = if overrides.replicates.is_some() { Place::Call } else { document.root().place().clone() };
+        document.mistake(Mistake::new(place, found, expected));
+        return None;
+    }
+    Some(settings)
 }
 
 fn required<'d>(root: &Table<'d>, key: &str, meaning: &str) -> Option<Table<'d>> {
@@ -192,19 +218,72 @@ fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory)
     }
 }
 
-fn link(document: &Document, landscape: &Landscape, dispersal: Option<&DispersalTable>) -> Option<Network> {
-    match dispersal {
-        None => Some(Network::unlinked(landscape.patches.len())),
-        Some(table) => match Network::build(landscape, table, &Neighbours::new(landscape)) {
-            Ok(checked) => {
-                checked.warnings.into_iter().for_each(|warning| document.warning(warning));
-                Some(checked.value)
-            }
-            Err(mistakes) => {
-                mistakes.into_vec().into_iter().for_each(|mistake| document.mistake(mistake));
-                None
-            }
-        },
+fn link(document: &Document, landscape: &Landscape, table: &DispersalTable) -> Option<Network> {
+    match Network::build(landscape, table, &Neighbours::new(landscape)) {
+        Ok(checked) => {
+            checked.warnings.into_iter().for_each(|warning| document.warning(warning));
+            Some(checked.value)
+        }
+        Err(mistakes) => {
+            mistakes.into_vec().into_iter().for_each(|mistake| document.mistake(mistake));
+            None
+        }
+    }
+}
+
+/// Warns where capacity plays no part, or hardly any.
+fn warn_of_density(document: &Document, life_history: &LifeHistory) {
+    let growth = life_history.matrix.growth();
+    let density = &life_history.density;
+    let warn = |found: String, note: &str| {
+        let place = document.root().place().clone();
+        document
+            .warning(Mistake::new(place, found, note).advise("form = \"ceiling\" caps numbers whatever their growth"));
+    };
+    if density.is_idle() {
+        let found = format!("growth of {growth:.4} in an average year, under the form {}", density.form);
+        warn(found, "numbers do not grow, so that there is nothing to scale: capacity plays no part");
+    } else if density.curve.is_some() && growth < 1.05 {
+        let found = format!("growth of {growth:.4} in an average year, under the form {}", density.form);
+        warn(found, "so little presses on numbers near capacity that they can run far above it");
+    }
+    if density.curve.is_some() && life_history.stages.iter().all(|stage| stage.toward_capacity <= 0.0) {
+        let found = format!("no stage counts toward capacity, under the form {}", density.form);
+        warn(found, "capacity plays no part");
+    }
+}
+
+/// Generation time has one source: the stages where there are some.
+fn warn_of_generation(document: &Document, settings: &Settings, life_history: &LifeHistory) {
+    if let (Some(stated), Some(years)) = (settings.generation_years, life_history.generation_time()) {
+        let found = format!("generation_years = {stated}");
+        let note = format!("the stages give {years:.2} years, which is used instead");
+        document
+            .warning(Mistake::new(document.root().place().clone(), found, note).advise("take generation_years out"));
+    }
+}
+
+/// Warns of the emigrants that patches without any link lose.
+fn warn_of_lost_emigrants(
+    document: &Document,
+    life_history: &LifeHistory,
+    landscape: &Landscape,
+    network: &Network,
+    model: &Model,
+) {
+    if life_history.emigration_said.is_none() || network.links.is_empty() && landscape.patches.len() == 1 {
+        return;
+    }
+    let isolated = (0..network.n_patches()).filter(|patch| network.row(*patch).is_empty());
+    let shares = life_history.matrix.stable_distribution();
+    let leaving: f64 = life_history.stages.iter().zip(&shares).map(|(stage, share)| stage.emigration * share).sum();
+    let starts = model.start_totals();
+    let (count, lost) =
+        isolated.fold((0, 0.0), |(count, lost), patch| (count + 1, lost + leaving * starts[patch] as f64));
+    if count > 0 {
+        let found = format!("{count} of {} patches have no link", landscape.patches.len());
+        let note = format!("about {lost:.1} of their individuals leave and are lost in the first year");
+        document.warning(Mistake::new(document.root().place().clone(), found, note));
     }
 }
 
@@ -255,7 +334,7 @@ fn warn_of_growth(document: &Document, life_history: &LifeHistory, model: &Model
     let largest = model.start_totals().into_iter().max().unwrap_or(0).max(1);
     let years = crate::num::ln(f64::from(u32::MAX) / largest as f64) / crate::num::ln(growth);
     if growth > 1.0 && years < f64::from(model.horizon()) {
-        let found = format!("growth of {growth:.3} a year without density dependence");
+        let found = format!("growth by a factor of {growth:.3} a year without density dependence");
         let note = format!(
             "mean numbers in one patch pass {}, the most that can be counted, about year {years:.0}; \
              counts stop there and the outcome says in how many replicates",

@@ -100,7 +100,7 @@ impl State {
         for (own, tally) in self.own.iter().zip(&mut self.tallies.patches) {
             own.add_to(tally);
         }
-        self.tallies.records.push(Record {
+        self.tallies.add_record(Record {
             replicate,
             totals: std::mem::take(&mut self.totals),
             quasi_extinct_in: self.quasi_extinct_in,

@@ -12,8 +12,9 @@ use super::tally::Tallies;
 const BATCH: u32 = 500;
 /// The least that is run before a rule is asked.
 const LEAST: u32 = 1_000;
-/// The most that a rule can ask for.
+/// The most that a rule can ask for, and the most totals by replicate and year that are kept for it.
 const MOST: u32 = 10_000_000;
+const MOST_TOTALS: u64 = 1 << 30;
 
 /// How many replicates are run.
 pub enum Stopping<'a> {
@@ -46,11 +47,12 @@ pub struct Run {
 pub fn run(model: &Model, stopping: &Stopping<'_>, threads: usize, stop: &AtomicBool, progress: Progress<'_>) -> Run {
     let pool = ThreadPoolBuilder::new().num_threads(threads).build().expect("the system can start threads");
     let mut tallies = Tallies::empty(model.horizon, model.n_patches(), model.n_links());
+    let most = MOST.min((MOST_TOTALS / (u64::from(model.horizon) + 1)) as u32).max(LEAST);
     let mut done = 0;
     loop {
         let (to, planned) = match stopping {
             Stopping::After(replicates) => (*replicates, Some(*replicates)),
-            Stopping::Once(_) => ((done + BATCH).clamp(LEAST, MOST), None),
+            Stopping::Once(_) => ((done + BATCH).clamp(LEAST, most), None),
         };
         let batch = run_batch(model, &pool, done + 1, to, stop, &|more| progress(done + more, planned));
         done += u32::try_from(batch.n_replicates()).unwrap_or(u32::MAX);
@@ -58,12 +60,12 @@ pub fn run(model: &Model, stopping: &Stopping<'_>, threads: usize, stop: &Atomic
         if done < to {
             return Run { tallies, complete: false };
         }
-        let enough = match stopping {
+        let complete = match stopping {
             Stopping::After(_) => true,
-            Stopping::Once(rule) => rule(&tallies) || done >= MOST,
+            Stopping::Once(rule) => rule(&tallies),
         };
-        if enough {
-            return Run { tallies, complete: true };
+        if complete || done >= most {
+            return Run { tallies, complete };
         }
     }
 }

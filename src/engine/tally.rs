@@ -53,6 +53,8 @@ pub struct Tallies {
     pub horizon: u32,
     /// one record a replicate, in the order of replicates
     pub records: Vec<Record>,
+    /// replicates with at least one individual at the last census
+    pub persisting: u64,
     /// occupied patches summed over replicates, by census 0 to the horizon
     pub occupied_patches: Vec<u64>,
     /// one tally a patch, in canonical order
@@ -67,6 +69,7 @@ impl Tallies {
         Self {
             horizon,
             records: Vec::new(),
+            persisting: 0,
             occupied_patches: vec![0; horizon as usize + 1],
             patches: vec![PatchTally::default(); n_patches],
             movers: vec![0; n_links],
@@ -78,9 +81,10 @@ impl Tallies {
         self.records.len()
     }
 
-    /// Replicates with at least one individual at the last census.
-    pub fn persisting(&self) -> u64 {
-        self.records.iter().filter(|record| record.totals.last().is_some_and(|total| *total > 0)).count() as u64
+    /// Takes down a replicate.
+    pub(super) fn add_record(&mut self, record: Record) {
+        self.persisting += u64::from(record.totals.last().is_some_and(|total| *total > 0));
+        self.records.push(record);
     }
 
     /// Adds the sum over other replicates of the same model; the result is the same in any order of adding.
@@ -91,8 +95,15 @@ impl Tallies {
         assert_eq!(self.horizon, other.horizon, "sums of one model");
         assert_eq!(self.patches.len(), other.patches.len(), "sums of one model");
         assert_eq!(self.movers.len(), other.movers.len(), "sums of one model");
+        let in_order = match (self.records.last(), other.records.first()) {
+            (Some(last), Some(first)) => last.replicate < first.replicate,
+            _ => true,
+        };
+        self.persisting += other.persisting;
         self.records.extend(other.records);
-        self.records.sort_by_key(|record| record.replicate);
+        if !in_order {
+            self.records.sort_by_key(|record| record.replicate);
+        }
         add_all(&mut self.occupied_patches, &other.occupied_patches);
         add_all(&mut self.movers, &other.movers);
         for (tally, more) in self.patches.iter_mut().zip(&other.patches) {

@@ -37,15 +37,18 @@ fn local_dynamics(model: &Model, state: &mut State, key: YearKey) {
     }
 }
 
+/// Where there is no capacity the multiplier of the rates acted on is 0, under every form.
 fn pressure(model: &Model, patch: usize, counts: &[u32]) -> Pressure {
     let capacity = model.capacity[patch];
-    if capacity <= 0.0 {
-        return Pressure { survival: 0.0, fecundity: 0.0 };
-    }
-    let Some(crowding) = &model.crowding else { return Pressure::NONE };
-    let numbers: f64 =
-        counts.iter().zip(&model.toward_capacity).map(|(count, weight)| f64::from(*count) * weight).sum();
-    let multiplier = crowding.curve.multiplier(numbers / capacity);
+    let crowding = &model.crowding;
+    let multiplier = match &crowding.curve {
+        _ if capacity <= 0.0 => 0.0,
+        None => return Pressure::NONE,
+        Some(curve) => {
+            let weighted = counts.iter().zip(&model.toward_capacity).map(|(count, weight)| f64::from(*count) * weight);
+            curve.multiplier(weighted.sum::<f64>() / capacity)
+        }
+    };
     Pressure {
         survival: if crowding.on_survival { multiplier } else { 1.0 },
         fecundity: if crowding.on_fecundity { multiplier } else { 1.0 },

@@ -12,7 +12,7 @@ use crate::mistake::{Mistake, Place};
 use crate::study::{NOT_NEGATIVE, Numbers, Said};
 
 /// Areas that a patch may have, in hectares: the surface of the Earth at most.
-const AREAS_HA: Numbers = Numbers { low: 0.0, high: 5.1e10, above_low: true, below_high: false };
+const AREAS_HA: Numbers = Numbers { low: 1e-6, high: 5.1e10, above_low: false, below_high: false };
 
 /// The values that the study gives to each feature; `None` where a mistake has been noted.
 pub(super) struct Values {

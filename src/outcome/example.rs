@@ -65,6 +65,7 @@ pub(crate) fn tallies() -> Tallies {
     };
     Tallies {
         horizon: 4,
+        persisting: 2,
         records: vec![
             record(1, [20, 12, 6, 3, 0], Some(3), 0),
             record(2, [20, 24, 22, 25, 30], None, 3),

@@ -64,6 +64,7 @@ struct Species {
     young: String,
     growth_in_an_average_year: f64,
     generation_years: Option<f64>,
+    generation_is_stated: bool,
     density_dependence: String,
     stages: Vec<Stage>,
     elasticity_survival: f64,
@@ -98,7 +99,7 @@ impl Understood {
             precision,
             landscape: Landscape::new(prepared),
             network: Network::new(prepared),
-            species: Species::new(&prepared.life_history),
+            species: Species::new(&prepared.life_history, settings.generation_years),
             weather: weather(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
         }
@@ -233,7 +234,7 @@ impl Network {
 }
 
 impl Species {
-    fn new(life_history: &LifeHistory) -> Self {
+    fn new(life_history: &LifeHistory, stated_generation_years: Option<f64>) -> Self {
         let matrix = &life_history.matrix;
         let (fates, young) = matrix.elasticities();
         let (stable, values) = (matrix.stable_distribution(), matrix.reproductive_values());
@@ -258,7 +259,8 @@ impl Species {
             individuals: life_history.individuals.clone(),
             young: life_history.model.young_in_words(),
             growth_in_an_average_year: matrix.growth(),
-            generation_years: matrix.generation_time().filter(|_| life_history.kind != "counts"),
+            generation_years: life_history.generation_time().or(stated_generation_years),
+            generation_is_stated: life_history.generation_time().is_none(),
             density_dependence: density_in_words(life_history),
             stages,
             elasticity_survival: sum(&fates),
@@ -275,7 +277,11 @@ impl Species {
             ),
         ];
         if let Some(years) = self.generation_years {
-            let how = "mean age of mothers, stable distribution; Bienvenu & Legendre 2015";
+            let how = if self.generation_is_stated {
+                "as the study states"
+            } else {
+                "mean age of mothers, stable distribution; Bienvenu & Legendre 2015"
+            };
             rows.push(row("generation", &format!("{years:.2} years ({how})")));
         }
         rows.push(row("density dependence", &self.density_dependence));

@@ -70,7 +70,9 @@ impl LocalModel for Stages {
             }
             over |= add(&mut next[last.0], left);
         }
-        over |= add(&mut next[0], self.born(counts, fecundity, pressure.fecundity, place));
+        let born = self.born(counts, fecundity, pressure.fecundity, place);
+        over |= born == u32::MAX;
+        over |= add(&mut next[0], born);
         counts.copy_from_slice(next);
         over
     }
@@ -84,6 +86,7 @@ impl LocalModel for Stages {
 }
 
 impl Stages {
+    /// The young of all stages; the largest count stands for all that would pass it.
     fn born(&self, counts: &[u32], fecundity: &[f64], pressure: f64, place: PlaceKey) -> u32 {
         match self.young {
             // A sum of independent Poisson numbers is Poisson: one draw for all stages.
