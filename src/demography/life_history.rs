@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use super::density::Density;
-use super::local::{self, LocalModel};
+use super::local::{self, LocalModel, Occupancy};
 use super::matrix::ProjectionMatrix;
 use super::rate::Rate;
 use crate::study::{Said, Table};
@@ -38,6 +38,8 @@ pub struct LifeHistory {
     pub model: Arc<dyn LocalModel>,
     /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`
     pub emigration_said: Option<Said<f64>>,
+    /// in a model of patches full or empty, what a patch's turnover follows; its rates are e and y
+    pub occupancy: Option<Occupancy>,
 }
 
 impl LifeHistory {
