@@ -58,6 +58,12 @@ impl LifeHistory {
         life_history
     }
 
+    /// The exponent x with which extinction falls with area, as the metapopulation capacity takes it: 1 where patches are not
+    /// full or empty.
+    pub fn extinction_exponent(&self) -> f64 {
+        self.occupancy.map_or(1.0, |occupancy| occupancy.extinction_exponent)
+    }
+
     /// Whether any rate varies from year to year.
     pub fn varies(&self) -> bool {
         self.rates.iter().any(|rate| rate.sd > 0.0)
