@@ -162,7 +162,7 @@ fn dispersal_is_needed_and_nobody_settles() {
     let wrong = format!("{DISPERSAL}settlement = \"opn\"\nmax_km = 0\n");
     refused(study(&format!("{LANDSCAPE}{LIFE}{wrong}")), 2, &["write \"open\"", "max_km = 0"]);
     let near = format!("{DISPERSAL}max_km = 0.9\n");
-    warned(study(&format!("{LANDSCAPE}{LIFE}{near}")), &["p1 and 2 more could be colonised, by max_km"]);
+    warned(study(&format!("{LANDSCAPE}{LIFE}{near}")), &["p1 and 2 more could be colonised, within max_km"]);
 }
 
 #[test]

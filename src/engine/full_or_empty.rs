@@ -93,8 +93,12 @@ fn warn_of_the_isolated(document: &Document, landscape: &Landscape, dispersal: &
         .collect();
     let Some(first) = alone.first() else { return };
     let others = if alone.len() > 1 { format!(" and {} more", alone.len() - 1) } else { String::new() };
-    let by = if matches!(dispersal.movement, Movement::Measured(_)) { "the measured table" } else { "max_km" };
-    let found = format!("no patch from which {first}{others} could be colonised, by {by}");
+    let by = match &dispersal.movement {
+        Movement::Measured(_) => ", by the measured table",
+        Movement::Kernel(kernel) if kernel.max_km.is_some() => ", within max_km",
+        Movement::Kernel(_) => "",
+    };
+    let found = format!("no patch from which {first}{others} could be colonised{by}");
     let note = "where such a patch dies out it stays empty";
     document.warning(Mistake::new(dispersal.place.clone(), found, note));
 }
