@@ -71,6 +71,13 @@ impl Model {
         self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
     }
 
+    /// Where patches are full or empty: the number that would be occupied at rest in average years, if chance made no patch
+    /// unlike its mean. `None` also where that state is approached too slowly to be told.
+    pub fn occupied_at_rest(&self) -> Option<f64> {
+        let [e, y] = *self.rates.means() else { return None };
+        self.turnovers.as_ref()?.occupied_at_rest(e, y)
+    }
+
     /// Links along which individuals may move, or patches be colonised.
     pub fn n_links(&self) -> usize {
         let moving = self.movement.as_ref().map_or(0, Movement::n_links);

@@ -8,6 +8,11 @@ use crate::network::Sources;
 use crate::num;
 use crate::random::YearKey;
 
+/// How often the state at rest is approached before it is given up.
+const SWEEPS: usize = 1_000;
+/// It is reached when a sweep changes no more than this many patches in all.
+const AT_REST: f64 = 1e-9;
+
 /// What is needed of areas and distances, compiled: the loop takes no power and no exponential.
 #[derive(Debug)]
 pub(super) struct Turnovers {
@@ -54,6 +59,35 @@ impl Turnovers {
             let counts = &mut state.counts[patch..=patch];
             model.local.step(counts, &chances, Pressure::NONE, place, &mut state.scratch);
         }
+    }
+
+    /// The number of patches that would be occupied at rest, if each patch met the mean of the others: the greatest solution
+    /// of p = C / (C + E), C and E at the connectivity that the sources have with chance p. The map rises with p, so that
+    /// its repetition from all patches full falls to that solution. `None` where it is not near in [`SWEEPS`].
+    pub(super) fn occupied_at_rest(&self, e: f64, y: f64) -> Option<f64> {
+        let mut occupied = vec![1.0; self.area_to_x.len()];
+        let mut connectivity = vec![0.0; occupied.len()];
+        for _ in 0..SWEEPS {
+            connectivity.fill(0.0);
+            for (patch, occupied) in occupied.iter().enumerate() {
+                let row = self.row_start[patch]..self.row_start[patch + 1];
+                for (target, contribution) in self.targets[row.clone()].iter().zip(&self.contributions[row]) {
+                    connectivity[*target as usize] += contribution * occupied;
+                }
+            }
+            let mut change = 0.0;
+            for ((occupied, connectivity), area_to_x) in occupied.iter_mut().zip(&connectivity).zip(&self.area_to_x) {
+                let turnover = self.occupancy.turnover(e, y, *area_to_x, *connectivity);
+                let sum = turnover.colonisation + turnover.extinction;
+                let next = if sum > 0.0 { turnover.colonisation / sum } else { *occupied };
+                change += (*occupied - next).abs();
+                *occupied = next;
+            }
+            if change < AT_REST {
+                return Some(occupied.iter().sum());
+            }
+        }
+        None
     }
 
     /// The connectivity of every patch, summed over the occupied ones in canonical order.

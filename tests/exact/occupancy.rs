@@ -303,6 +303,29 @@ fn bad_years_raise_e_and_y_together() {
     seen.occupied_at_end(&[1.0 - together, 1.0]);
 }
 
+/// Two patches of one hectare at a distance of ln 2: S = p/2 in both at rest, and p = C/(C + E) is a quadratic with the
+/// greater root (1 + sqrt(1 - 4 (1 + E) E y^2/w^2)) / (2 (1 + E)), w = 1/2; where it has none, the network dies out.
+#[test]
+fn two_alike_at_rest() {
+    let mut network = Network {
+        name: "two at rest",
+        patches: vec![([0.0, 0.0], 1.0, true), ([std::f64::consts::LN_2, 0.0], 1.0, true)],
+        alpha: 1.0,
+        e: 0.1,
+        x: 1.0,
+        y: 0.5,
+        rescue: false,
+        b: 1.0,
+        weather: "",
+    };
+    let at_rest = |network: &Network| network.prepare(1, false).model.occupied_at_rest().expect("it is soon reached");
+    let p = (1.0 + (1.0_f64 - 4.0 * 1.1 * 0.1).sqrt()) / 2.2;
+    // Distances are rounded to 1 mm, which moves w by 1e-6 of itself.
+    assert!((at_rest(&network) - 2.0 * p).abs() < 1e-5);
+    network.y = 1.0;
+    assert!(at_rest(&network) < 1e-6);
+}
+
 /// Whatever the order of the patches in the file, every replicate is the same.
 #[test]
 fn the_order_of_patches_changes_nothing() {

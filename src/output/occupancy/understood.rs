@@ -65,6 +65,8 @@ struct Turnover {
     extinction: Spread,
     /// chance a year that a patch is colonised while all others are occupied
     colonisation_with_all_others_occupied: Spread,
+    /// patches occupied at rest, chance left out
+    occupied_at_rest: Option<f64>,
 }
 
 /// The least, the middle and the greatest over the patches.
@@ -138,7 +140,7 @@ impl Landscape {
         let rows = vec![
             row("patches", &grouped(self.patches as u64)),
             row("area", &area),
-            row("start", &format!("{} of the patches occupied", self.occupied_at_start)),
+            row("start", &format!("{} of the patches occupied", grouped(self.occupied_at_start as u64))),
         ];
         block("Landscape", rows)
     }
@@ -224,6 +226,7 @@ impl Turnover {
             y_factor_sd: y.sd / y.mean,
             extinction: Spread::of(extinction),
             colonisation_with_all_others_occupied: Spread::of(colonisation),
+            occupied_at_rest: prepared.model.occupied_at_rest(),
         })
     }
 
@@ -246,6 +249,9 @@ impl Turnover {
         if self.e_factor_sd > 0.0 || self.y_factor_sd > 0.0 {
             let sds = format!("sd {} on e, {} on y", short(self.e_factor_sd), short(self.y_factor_sd));
             rows.push(row("a year's factors", &format!("{sds}; a bad year raises both")));
+        }
+        if let Some(patches) = self.occupied_at_rest {
+            rows.push(row("at rest", &format!("{} patches occupied, were it not for chance", amount(patches))));
         }
         block("Turnover in an average year (incidence function; Hanski 1994)", rows)
     }
