@@ -2,6 +2,7 @@
 
 use std::alloc::System;
 use std::fs;
+use std::path::Path;
 use std::sync::atomic::AtomicBool;
 
 use eyot::engine::{Overrides, Prepared, Stopping, prepare, run};
@@ -76,10 +77,29 @@ fn allocations(prepared: &Prepared) -> usize {
     count
 }
 
+/// The example of patches full or empty, over so many years.
+fn full_or_empty(horizon: u32) -> Prepared {
+    let root = Path::new(env!("CARGO_MANIFEST_DIR"));
+    let text = fs::read_to_string(root.join("examples/tessary/study.toml")).expect("the example is there");
+    let text = text
+        .replace("horizon = 100", &format!("horizon = {horizon}"))
+        .replace("../..", root.to_str().expect("the folder has a plain name"));
+    let folder = tempfile::tempdir().expect("a temporary folder can be made");
+    fs::write(folder.path().join("study.toml"), text).expect("a temporary file can be written");
+    match prepare(&folder.path().join("study.toml"), Overrides::default()) {
+        Ok(checked) => checked.value,
+        Err(failure) => panic!("{failure}"),
+    }
+}
+
 #[test]
 fn years_cost_no_allocation() {
-    for density in ["ceiling", "ricker"] {
-        let (short, long) = (study(5, density), study(300, density));
+    let pairs = [
+        (study(5, "ceiling"), study(300, "ceiling")),
+        (study(5, "ricker"), study(300, "ricker")),
+        (full_or_empty(5), full_or_empty(300)),
+    ];
+    for (short, long) in pairs {
         // A first run pays for what is made once in the life of the process.
         allocations(&short);
         let (few, many) = (allocations(&short), allocations(&long));

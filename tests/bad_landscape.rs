@@ -254,7 +254,10 @@ fn quality_and_area() {
     let percent = text.replace("0.5", "50");
     assert_warned(&read(&table, &[("p.geojson", percent.as_bytes())], &[]), &["q = 50", "percentage"]);
     let none = text.replace("\"ha\":80", "\"ha\":0");
-    assert_refused(&read(&table, &[("p.geojson", none.as_bytes())], &[]), &["feature 0 (p1)", "ha = 0", "from 0.000001"]);
+    assert_refused(
+        &read(&table, &[("p.geojson", none.as_bytes())], &[]),
+        &["feature 0 (p1)", "ha = 0", "from 0.000001"],
+    );
 
     let huge = text.replace("0.5", "1e308");
     assert_refused(&read(&table, &[("p.geojson", huge.as_bytes())], &[]), &["feature 0 (p1)", "beyond all numbers"]);

@@ -7,7 +7,7 @@ use clap::Args;
 use super::{DONE, say, warn};
 use crate::engine::{Overrides, prepare};
 use crate::mistake::Failure;
-use crate::output::Understood;
+use crate::output::{OccupancyUnderstood, Understood};
 
 /// Read everything, say what was understood, and warn; no simulation.
 #[derive(Debug, Args)]
@@ -25,12 +25,18 @@ pub(super) struct Arguments {
 
 pub(super) fn main(arguments: &Arguments) -> Result<u8, Failure> {
     let checked = prepare(&arguments.study, Overrides::default())?;
-    let understood = Understood::new(&checked.value, &checked.warnings);
+    let (json, text) = match OccupancyUnderstood::new(&checked.value, &checked.warnings) {
+        Some(understood) => (understood.json(), understood.text()),
+        None => {
+            let understood = Understood::new(&checked.value, &checked.warnings);
+            (understood.json(), understood.text())
+        }
+    };
     if arguments.json {
-        say(&understood.json());
+        say(&json);
     } else if !arguments.quiet {
         warn(&checked.warnings);
-        say(&understood.text());
+        say(&text);
         say(&format!("\nnothing is missing; next:  eyot run {}", super::quoted(&arguments.study)));
     }
     Ok(DONE)

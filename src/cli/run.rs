@@ -10,7 +10,7 @@ use super::{DONE, FAILED, complain, say, warn};
 use crate::engine::{self, Overrides, Prepared, Run, Stopping, Tallies, prepare};
 use crate::mistake::{Failure, Mistake};
 use crate::network::Structure;
-use crate::outcome::{Estimate, Outcome};
+use crate::outcome::{Counted, Estimate, Outcome};
 use crate::output::{Account, Existing, Folder, json, summary, write_run};
 use crate::study::Effort;
 
@@ -128,8 +128,11 @@ fn simulate(prepared: &Prepared, arguments: &Arguments) -> std::io::Result<Run> 
 }
 
 fn outcome(prepared: &Prepared, tallies: &Tallies) -> Option<Outcome> {
-    let Prepared { landscape, network, dispersal, settings, model, .. } = prepared;
-    let structure = dispersal.as_ref().map(|dispersal| Structure::new(landscape, dispersal, network, 1.0));
+    let Prepared { landscape, network, dispersal, settings, model, life_history, .. } = prepared;
+    let exponent = life_history.extinction_exponent();
+    let structure = dispersal.as_ref().map(|dispersal| Structure::new(landscape, dispersal, network, exponent));
     let threshold = settings.quasi_extinction.as_ref();
+    let counted = if life_history.occupancy.is_some() { Counted::OccupiedPatches } else { Counted::Individuals };
     Outcome::from_tallies(tallies, landscape, network, &model.start_totals(), threshold, structure)
+        .map(|outcome| outcome.counting(counted))
 }

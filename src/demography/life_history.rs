@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use super::density::Density;
-use super::local::{self, LocalModel};
+use super::local::{self, LocalModel, Occupancy};
 use super::matrix::ProjectionMatrix;
 use super::rate::Rate;
 use crate::study::{Said, Table};
@@ -38,6 +38,8 @@ pub struct LifeHistory {
     pub model: Arc<dyn LocalModel>,
     /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`
     pub emigration_said: Option<Said<f64>>,
+    /// in a model of patches full or empty, what a patch's turnover follows; its rates are e and y
+    pub occupancy: Option<Occupancy>,
 }
 
 impl LifeHistory {
@@ -54,6 +56,12 @@ impl LifeHistory {
         let life_history = (kind.value)(&table);
         table.finish();
         life_history
+    }
+
+    /// The exponent x with which extinction falls with area, as the metapopulation capacity takes it: 1 where patches are not
+    /// full or empty.
+    pub fn extinction_exponent(&self) -> f64 {
+        self.occupancy.map_or(1.0, |occupancy| occupancy.extinction_exponent)
     }
 
     /// Whether any rate varies from year to year.

@@ -4,8 +4,10 @@
 //! yearly loop has no error path, no strings, no files and no geometry.
 
 mod compile;
+mod full_or_empty;
 mod model;
 mod movement;
+mod occupancy;
 mod prepare;
 mod realise;
 mod replicate;

@@ -3,6 +3,7 @@
 use std::sync::Arc;
 
 use super::movement::Movement;
+use super::occupancy::Turnovers;
 use super::realise::Rates;
 use crate::demography::density::Curve;
 use crate::demography::local::LocalModel;
@@ -45,6 +46,8 @@ pub struct Model {
     pub(super) ceiling: bool,
     pub(super) rates: Rates,
     pub(super) movement: Option<Movement>,
+    /// where patches are full or empty, what takes the place of local dynamics and dispersal
+    pub(super) turnovers: Option<Turnovers>,
     pub(super) threshold: Option<Threshold>,
 }
 
@@ -69,8 +72,16 @@ impl Model {
         self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
     }
 
-    /// Links along which individuals may move.
+    /// Where patches are full or empty: the number that would be occupied at rest in average years, if chance made no patch
+    /// unlike its mean. `None` also where that state is approached too slowly to be told.
+    pub fn occupied_at_rest(&self) -> Option<f64> {
+        let [e, y] = *self.rates.means() else { return None };
+        self.turnovers.as_ref()?.occupied_at_rest(e, y)
+    }
+
+    /// Links along which individuals may move, or patches be colonised.
     pub fn n_links(&self) -> usize {
-        self.movement.as_ref().map_or(0, Movement::n_links)
+        let moving = self.movement.as_ref().map_or(0, Movement::n_links);
+        self.turnovers.as_ref().map_or(moving, Turnovers::n_links)
     }
 }

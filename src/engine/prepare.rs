@@ -3,6 +3,7 @@
 use std::path::Path;
 
 use super::compile::{compile, start_counts};
+use super::full_or_empty::{self, Linked};
 use super::model::Model;
 use crate::demography::LifeHistory;
 use crate::environment::{Correlation, EnvironmentTable};
@@ -31,6 +32,8 @@ pub struct Prepared {
     pub dispersal: Option<DispersalTable>,
     /// the dispersal matrix; without links where nobody disperses
     pub network: Network,
+    /// in an occupancy study, pairs of patches too far apart for the links
+    pub n_left_out: u64,
     /// the species
     pub life_history: LifeHistory,
     /// how years vary
@@ -60,39 +63,51 @@ pub fn prepare(file: &Path, overrides: Overrides) -> Result<Checked<Prepared>, F
 fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let root = document.root();
     let settings = Settings::read(&root);
+    let full_or_empty = full_or_empty::is_asked_for(&root);
     let life_history = required(&root, "life_history", "the species: its stages and rates").and_then(LifeHistory::read);
     let environment = match root.table("environment") {
         Some(table) => EnvironmentTable::read(table),
         None => Some(EnvironmentTable::default()).filter(|_| !root.has("environment")),
     };
-    let dispersal = root.table("dispersal").map(DispersalTable::read);
-    let landscape_table =
-        required(&root, "landscape", "the patches: their file, capacity and start").and_then(LandscapeTable::read);
+    let dispersal = root.table("dispersal").map(if full_or_empty {
+        DispersalTable::read_for_occupancy
+    } else {
+        DispersalTable::read
+    });
+    let landscape_table = required(&root, "landscape", "the patches: their file, capacity and start")
+        .and_then(if full_or_empty { LandscapeTable::read_full_or_empty } else { LandscapeTable::read });
     let stage_names = life_history.as_ref().map(LifeHistory::stage_names).unwrap_or_default();
     let landscape = landscape_table.and_then(|table| Landscape::read(&table, document, &stage_names));
     root.finish();
 
     // Every check is made whose own inputs could be read, so that one run shows as much as it can.
     if let (Some(life_history), Some(environment)) = (&life_history, &environment) {
-        check_dispersal(document, life_history, &dispersal);
+        match life_history.occupancy {
+            Some(_) => full_or_empty::check(document, settings.as_ref(), dispersal.is_some()),
+            None => check_dispersal(document, life_history, &dispersal),
+        }
         check_correlation(document, life_history, environment, landscape.as_ref());
     }
     let settings = settings.and_then(|settings| override_settings(document, settings, overrides));
     let counted_stages = both(&settings, &life_history).and_then(|(a, b)| counted_stages(document, a, b));
     let start = both(&landscape, &life_history).and_then(|(a, b)| start(document, a, b));
-    let network = landscape.as_ref().and_then(|landscape| match &dispersal {
-        Some(table) => table.as_ref().and_then(|table| link(document, landscape, table)),
-        None => Some(Network::unlinked(landscape.patches.len())),
+    let occupancy = life_history.as_ref().and_then(|life_history| life_history.occupancy);
+    let linked = landscape.as_ref().and_then(|landscape| match (&dispersal, occupancy) {
+        (Some(table), Some(occupancy)) => full_or_empty::link(document, landscape, table.as_ref()?, occupancy),
+        (Some(table), None) => link(document, landscape, table.as_ref()?).map(Linked::for_movement),
+        (None, Some(_)) => None,
+        (None, None) => Some(Linked::for_movement(Network::unlinked(landscape.patches.len()))),
     });
     let (settings, life_history, environment, landscape) = (settings?, life_history?, environment?, landscape?);
-    let (counted_stages, start, network) = (counted_stages?, start?, network?);
+    let (counted_stages, start, linked) = (counted_stages?, start?, linked?);
+    let Linked { network, turnovers, n_left_out } = linked;
     let dispersal = dispersal.flatten();
     if !document.is_clean() {
         return None;
     }
     let model = compile(&settings, &landscape, &life_history, &environment, &network, start, counted_stages);
     let model = match model {
-        Ok(model) => model,
+        Ok(model) => Model { turnovers, ..model },
         Err(reason) => {
             let place =
                 environment.correlation.as_ref().map_or(document.root().place().clone(), |said| said.place.clone());
@@ -100,16 +115,19 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
             return None;
         }
     };
-    warn_of_growth(document, &life_history, &model);
-    warn_of_density(document, &life_history);
-    warn_of_generation(document, &settings, &life_history);
-    warn_of_lost_emigrants(document, &life_history, &landscape, &network, &model);
+    if life_history.occupancy.is_none() {
+        warn_of_growth(document, &life_history, &model);
+        warn_of_density(document, &life_history);
+        warn_of_generation(document, &settings, &life_history);
+        warn_of_lost_emigrants(document, &life_history, &landscape, &network, &model);
+    }
     warn_of_scales(document, &landscape, dispersal.as_ref(), &environment, &network);
     Some(Prepared {
         settings,
         landscape,
         dispersal,
         network,
+        n_left_out,
         life_history,
         environment,
         model,
@@ -188,6 +206,9 @@ fn check_correlation(
 }
 
 fn counted_stages(document: &Document, settings: &Settings, life_history: &LifeHistory) -> Option<Vec<usize>> {
+    if life_history.occupancy.is_some() {
+        return Some(Vec::new());
+    }
     let names = life_history.stage_names();
     let names: Vec<&str> = names.iter().map(String::as_str).collect();
     match settings.counted_stages(&names) {
@@ -205,7 +226,10 @@ fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory)
             warnings.into_iter().for_each(|warning| document.warning(warning));
             if counts.iter().all(|count| *count == 0) {
                 let place = document.root().place().clone();
-                let expected = "at least one individual in at least one patch";
+                let expected = match life_history.occupancy {
+                    Some(_) => "at least one occupied patch",
+                    None => "at least one individual in at least one patch",
+                };
                 document.mistake(Mistake::new(place, "landscape.start leaves every patch empty", expected));
                 return None;
             }

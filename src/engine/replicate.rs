@@ -61,6 +61,8 @@ pub(super) struct State {
     pub(super) weather: Option<WeatherState>,
     /// one patch's realised rates; those that do not vary never change
     pub(super) rates: Vec<f64>,
+    /// where patches are full or empty, the year's connectivity of each
+    pub(super) connectivity: Vec<f64>,
     /// one number a stage
     pub(super) scratch: Vec<u32>,
     pub(super) own: Vec<Own>,
@@ -81,6 +83,7 @@ impl State {
             arrivals: vec![0; cells],
             weather: model.rates.weather_state(),
             rates: model.rates.means().to_vec(),
+            connectivity: model.turnovers.as_ref().map_or_else(Vec::new, |_| vec![0.0; model.n_patches()]),
             scratch: vec![0; model.n_stages],
             own: vec![Own::default(); model.n_patches()],
             saturated: false,

@@ -11,9 +11,13 @@ use crate::random::{Purpose, YearKey, remove_at_random};
 pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     let key = state.replicate.year(year);
     weather(model, state);
-    local_dynamics(model, state, key);
-    dispersal(model, state, key);
-    ceiling(model, state, key);
+    if let Some(turnovers) = &model.turnovers {
+        turnovers.step(model, state, key);
+    } else {
+        local_dynamics(model, state, key);
+        dispersal(model, state, key);
+        ceiling(model, state, key);
+    }
     census(model, state, year + 1);
 }
 

@@ -14,6 +14,7 @@ mod ground;
 mod measure;
 mod names;
 mod neighbours;
+mod occupied;
 mod overlap;
 mod patch;
 mod plane;

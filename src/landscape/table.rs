@@ -39,6 +39,8 @@ pub enum CapacityFrom {
     Property(Said<String>),
     /// a CSV table with the header `patch,capacity`
     Table(Said<String>),
+    /// patches are full or empty: each holds one
+    FullOrEmpty(Place),
 }
 
 /// Where the individuals at census 0 come from.
@@ -50,11 +52,29 @@ pub enum StartFrom {
     Property(Said<String>),
     /// a CSV table with the header `patch,count` or `patch,<stage>,...`
     Table(Said<String>),
+    /// a property of the patches that says whether they are occupied
+    OccupiedProperty(Said<String>),
+    /// a CSV table with the header `patch,occupied`
+    OccupiedTable(Said<String>),
 }
 
 impl LandscapeTable {
     /// Reads the table. `None`, with the mistakes noted, if a value without which nothing can go on is missing or wrong.
     pub fn read(table: Table<'_>) -> Option<Self> {
+        let capacity = required(&table, "capacity", "{ per_hectare = 14.0 }", read_capacity);
+        let start = required(&table, "start", "{ share_of_capacity = 0.6 }", read_start);
+        Self::read_with(table, capacity, start)
+    }
+
+    /// Reads the table of a study whose patches are full or empty: without capacities, and a start that says which are
+    /// occupied. `None` as in [`LandscapeTable::read`].
+    pub fn read_full_or_empty(table: Table<'_>) -> Option<Self> {
+        let capacity = no_capacity(&table);
+        let start = required(&table, "start", "{ property = \"occupied_2024\" }", read_occupied);
+        Self::read_with(table, capacity, start)
+    }
+
+    fn read_with(table: Table<'_>, capacity: Option<CapacityFrom>, start: Option<StartFrom>) -> Option<Self> {
         let patches = table.text("patches");
         if !table.has("patches") {
             table.missing("patches", "the path of a GeoJSON file of patches");
@@ -63,8 +83,6 @@ impl LandscapeTable {
         let crs = table.choice("crs", &[("metres", Crs::Metres)]);
         let distance = table.choice("distance", &[("edges", false), ("centroids", true)]);
         let area = read_area(&table);
-        let capacity = required(&table, "capacity", "{ per_hectare = 14.0 }", read_capacity);
-        let start = required(&table, "start", "{ share_of_capacity = 0.6 }", read_start);
         let landscape_area_ha = table.number("landscape_area_ha", POSITIVE);
         let optional_are_right = [
             table.has("id") == id.is_some(),
@@ -94,6 +112,7 @@ impl CapacityFrom {
         match self {
             Self::PerHectare { per_hectare, .. } => (&per_hectare.place, &per_hectare.words),
             Self::Property(said) | Self::Table(said) => (&said.place, &said.words),
+            Self::FullOrEmpty(place) => (place, "occupied patches"),
         }
     }
 }
@@ -153,6 +172,35 @@ fn read_start(table: Table<'_>) -> Option<StartFrom> {
         return None;
     }
     share.map(StartFrom::ShareOfCapacity).or(property.map(StartFrom::Property)).or(path.map(StartFrom::Table))
+}
+
+/// Patches that are full or empty have no capacity: a study that gives one means another kind of life history.
+fn no_capacity(table: &Table<'_>) -> Option<CapacityFrom> {
+    let Some(item) = table.item("capacity") else {
+        return (!table.has("capacity")).then(|| CapacityFrom::FullOrEmpty(table.place().clone()));
+    };
+    item.refuse(
+        table.document(),
+        "no capacity, since in an occupancy study patches are full or empty; take it out, or choose another kind",
+    );
+    None
+}
+
+/// Reads a start of patches that are full or empty.
+fn read_occupied(table: Table<'_>) -> Option<StartFrom> {
+    let share = table.item("share_of_capacity");
+    if let Some(share) = &share {
+        let expected = "property or table, which say patch by patch what is occupied: there is no capacity to share";
+        share.refuse(table.document(), expected);
+    }
+    let property = table.text("property");
+    let path = table.text("table");
+    let sound = share.is_none() && exactly_one(&table, &["property", "table"]);
+    table.finish();
+    if !sound {
+        return None;
+    }
+    property.map(StartFrom::OccupiedProperty).or(path.map(StartFrom::OccupiedTable))
 }
 
 fn exactly_one(table: &Table<'_>, keys: &[&str]) -> bool {

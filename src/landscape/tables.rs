@@ -4,11 +4,13 @@ use std::collections::{BTreeMap, BTreeSet};
 
 use super::findings::Findings;
 use super::names::name_of_cell;
+use super::occupied;
 use crate::mistake::{Mistake, nearest_word};
 use crate::study::{CsvRow, CsvTable, Numbers, Said};
 
 const PATCH: &str = "patch";
 const COUNT: &str = "count";
+const OCCUPIED: &str = "occupied";
 
 /// The individuals that a table gives to a patch.
 #[derive(Debug, Clone, PartialEq)]
@@ -67,6 +69,28 @@ pub(super) fn counts(
         };
     }
     counts
+}
+
+/// Reads a table `patch,occupied`: whether each of `features` features is occupied; `None` where a mistake has been noted.
+pub(super) fn occupied(
+    said: &Said<String>,
+    names: &Names<'_>,
+    features: usize,
+    findings: &Findings<'_>,
+) -> Vec<Option<bool>> {
+    let mut occupied = vec![None; features];
+    let Some(table) = Rows::read(said, names, findings) else { return occupied };
+    let Some(column) = table.column(OCCUPIED, findings) else { return occupied };
+    table.refuse_other_columns(&[OCCUPIED], findings);
+    for (feature, row) in &table.rows {
+        let cell = &row.cells[column];
+        occupied[*feature] = occupied::of_cell(cell);
+        if occupied[*feature].is_none() {
+            let found = format!("{OCCUPIED} = {cell}");
+            findings.mistake("cell", Mistake::new(table.table.place(row.line), found, occupied::EXPECTED));
+        }
+    }
+    occupied
 }
 
 /// The numbers of individuals that a patch may start with.

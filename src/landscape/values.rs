@@ -4,6 +4,7 @@ use std::path::Path;
 
 use super::findings::Findings;
 use super::geojson::Feature;
+use super::occupied;
 use super::patch::{Patch, Start};
 use super::properties::numbers;
 use super::table::{CapacityFrom, LandscapeTable, StartFrom};
@@ -101,6 +102,7 @@ impl Source<'_> {
                 let capacities = tables::capacities(path, &names, self.features.len(), NOT_NEGATIVE, self.findings);
                 capacities.into_iter().map(|capacity| capacity.map(Capacity::Individuals)).collect()
             }
+            CapacityFrom::FullOrEmpty(_) => vec![Some(Capacity::Individuals(1.0)); self.features.len()],
         }
     }
 
@@ -138,8 +140,21 @@ impl Source<'_> {
                 let counts = tables::counts(path, &names, self.features.len(), stages, self.findings);
                 counts.into_iter().map(|counts| counts.map(Start::from)).collect()
             }
+            StartFrom::OccupiedProperty(property) => {
+                full_or_empty(occupied::of_property(self.features, self.file, property, self.findings))
+            }
+            StartFrom::OccupiedTable(path) => {
+                let Some(names) = self.names() else { return vec![None; self.features.len()] };
+                full_or_empty(tables::occupied(path, &names, self.features.len(), self.findings))
+            }
         }
     }
+}
+
+/// An occupied patch holds one, an empty one none.
+fn full_or_empty(occupied: Vec<Option<bool>>) -> Vec<Option<Start>> {
+    let start = |occupied: bool| Start::Total(f64::from(u8::from(occupied)));
+    occupied.into_iter().map(|occupied| occupied.map(start)).collect()
 }
 
 impl From<Counts> for Start {
@@ -168,7 +183,8 @@ pub(super) fn check_totals(table: &LandscapeTable, file: &Path, patches: &[Patch
         Start::Total(total) => *total <= 0.0,
         Start::ByStage(counts) => counts.iter().all(|count| *count == 0),
     });
-    if empty {
+    let counted = !matches!(table.capacity, CapacityFrom::FullOrEmpty(_));
+    if empty && counted {
         let warning = Mistake::new(Place::file(file), "no patch has any individual at the start", "an empty network");
         findings.warning("totals", warning.advise("give start numbers, unless a proposal releases animals"));
     }

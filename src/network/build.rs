@@ -118,7 +118,11 @@ fn open_rows(
     rows.into_iter().map(|(row, _)| row).collect()
 }
 
-fn measured_rows(landscape: &Landscape, measured: &Measured, distances: &dyn Distances) -> Result<Vec<Row>, Mistakes> {
+pub(super) fn measured_rows(
+    landscape: &Landscape,
+    measured: &Measured,
+    distances: &dyn Distances,
+) -> Result<Vec<Row>, Mistakes> {
     let by_source = measured.by_source(landscape.patches.iter().map(|patch| patch.name.as_str()))?;
     let row = |(from, targets): (usize, Vec<(usize, f64)>)| {
         let sum: f64 = targets.iter().map(|(_, probability)| probability).sum();

@@ -43,6 +43,11 @@ impl Division {
         }
         Self { shares, kept, ln_total: heaviest + num::ln(total), cut_share }
     }
+
+    /// Those of the candidates it was made from that the cut leaves in.
+    pub(super) fn kept<'c>(&'c self, candidates: &'c [Candidate]) -> impl Iterator<Item = &'c Candidate> {
+        candidates.iter().zip(&self.kept).filter(|(_, kept)| **kept).map(|(candidate, _)| candidate)
+    }
 }
 
 /// The links out of one patch.

@@ -2,7 +2,7 @@
 
 use super::kernel::Kernel;
 use super::measured::Measured;
-use crate::mistake::Place;
+use crate::mistake::{Mistake, Place};
 use crate::study::{Item, NOT_NEGATIVE, Numbers, POSITIVE, Table};
 
 /// Share of those who land that the weakest links may lose, unless the study says otherwise.
@@ -22,7 +22,7 @@ pub enum Settlement {
 pub struct KernelDispersal {
     /// the kernel
     pub kernel: Kernel,
-    /// where emigrants settle
+    /// where emigrants settle; of no meaning in an occupancy study
     pub settlement: Settlement,
     /// rate of dying per km of the way
     pub path_mortality_per_km: f64,
@@ -56,6 +56,16 @@ impl DispersalTable {
     /// Reads the table. Mistakes are noted in the document; `None` if a value without which nothing can go on is missing
     /// or wrong.
     pub fn read(table: Table<'_>) -> Option<Self> {
+        Self::read_as(table, Use::Movement)
+    }
+
+    /// Reads the table of an occupancy study, in which the kernel says how near patches are and nobody is moved: settlement
+    /// is not asked for, and the keys that play no part are warned of. `None` as in [`DispersalTable::read`].
+    pub fn read_for_occupancy(table: Table<'_>) -> Option<Self> {
+        Self::read_as(table, Use::Occupancy)
+    }
+
+    fn read_as(table: Table<'_>, used: Use) -> Option<Self> {
         let place = table.place().clone();
         let area_exponent = or(&table, "area_exponent", NOT_NEGATIVE, 1.0);
         if !table.has("kernel") {
@@ -66,30 +76,44 @@ impl DispersalTable {
         }
         let movement = match table.table("kernel") {
             Some(keys) if keys.has("table") => read_measured(&table, keys),
-            Some(keys) => read_kernel(&table, Some(keys)),
-            None => read_kernel(&table, None),
+            Some(keys) => read_kernel(&table, Some(keys), used),
+            None => read_kernel(&table, None, used),
         };
-        warn_of_an_idle_exponent(&table, movement.as_ref());
+        match used {
+            Use::Movement => warn_of_an_idle_exponent(&table, movement.as_ref()),
+            Use::Occupancy => warn_of_idle_keys(&table, movement.as_ref()),
+        }
         table.finish();
         Some(Self { movement: movement?, area_exponent: area_exponent?, place })
     }
 }
 
+/// What the table is read for.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Use {
+    /// individuals that move
+    Movement,
+    /// patches that are colonised
+    Occupancy,
+}
+
 /// Without the kernel's own keys the others are still read, so that all that is missing is named at once.
-fn read_kernel(table: &Table<'_>, keys: Option<Table<'_>>) -> Option<Movement> {
+fn read_kernel(table: &Table<'_>, keys: Option<Table<'_>>, used: Use) -> Option<Movement> {
     let kernel = keys.as_ref().and_then(Kernel::read);
     // A shape that is not known has keys that are not known either.
     if let (Some(keys), true) = (keys, kernel.is_some()) {
         keys.finish();
     }
-    if !table.has("settlement") {
+    let settles = used == Use::Movement || table.has("settlement");
+    if settles && !table.has("settlement") {
         table.missing(
             "settlement",
             "\"shared\" (every emigrant heads for a patch) or \"open\" (those who land outside the patches are lost)",
         );
     }
     let choices = [("shared", Settlement::Shared), ("open", Settlement::Open)];
-    let settlement = table.choice("settlement", &choices);
+    let settlement = table.choice("settlement", &choices).map(|said| said.value);
+    let settlement = if settles { settlement } else { Some(Settlement::Shared) };
     let path_mortality_per_km = or(table, "path_mortality_per_km", NOT_NEGATIVE, 0.0);
     let below_1 = Numbers { low: 0.0, high: 1.0, above_low: false, below_high: true };
     let tail = or(table, "tail", below_1, TAIL);
@@ -99,7 +123,7 @@ fn read_kernel(table: &Table<'_>, keys: Option<Table<'_>>) -> Option<Movement> {
     }
     Some(Movement::Kernel(KernelDispersal {
         kernel: kernel?,
-        settlement: settlement?.value,
+        settlement: settlement?,
         path_mortality_per_km: path_mortality_per_km?,
         max_km: max_km.map(|said| said.value),
         tail: tail?,
@@ -122,6 +146,21 @@ fn read_measured(table: &Table<'_>, keys: Table<'_>) -> Option<Movement> {
 /// The number of a key, or what stands for it where the key is missing; `None` only if it is wrong.
 fn or(table: &Table<'_>, key: &str, numbers: Numbers, default: f64) -> Option<f64> {
     if table.has(key) { table.number(key, numbers).map(|said| said.value) } else { Some(default) }
+}
+
+/// In an occupancy study nobody dies on the way, settles or is cut off.
+fn warn_of_idle_keys(table: &Table<'_>, movement: Option<&Movement>) {
+    if !matches!(movement, Some(Movement::Kernel(_))) {
+        return;
+    }
+    for key in ["settlement", "path_mortality_per_km", "tail"].into_iter().filter(|key| table.has(key)) {
+        let warning = Mistake::new(
+            table.place().clone(),
+            table.address(key),
+            "not used in an occupancy study, whose kernel says how near patches are: nobody is moved",
+        );
+        table.document().warning(warning.advise("take the key out"));
+    }
 }
 
 fn warn_of_an_idle_exponent(table: &Table<'_>, movement: Option<&Movement>) {

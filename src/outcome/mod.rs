@@ -28,11 +28,22 @@ use crate::landscape::Landscape;
 use crate::network::{Network, Structure};
 use crate::study::QuasiExtinction;
 
+/// What the numbers of a census count.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Counted {
+    /// individuals of the species
+    Individuals,
+    /// occupied patches, each of which counts as one: what is called abundance here is their number
+    OccupiedPatches,
+}
+
 /// What one set of replicates says.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Outcome {
     /// years from census 0 to the last
     pub horizon: u32,
+    /// what is counted
+    pub counted: Counted,
     /// the threshold of quasi-extinction, if one was asked for
     pub quasi_extinction: Option<QuasiExtinction>,
     /// the answer and the numbers beside it
@@ -69,6 +80,7 @@ impl Outcome {
         let by_replicate: Vec<ReplicateRow> = tallies.records.iter().map(ReplicateRow::from).collect();
         Some(Self {
             horizon: tallies.horizon,
+            counted: Counted::Individuals,
             quasi_extinction: quasi_extinction.cloned(),
             summary: Summary::new(tallies, &by_year, &by_replicate),
             by_patch: patches::by_patch(tallies, landscape, starts, structure.as_ref()),
@@ -77,6 +89,12 @@ impl Outcome {
             by_replicate,
             structure,
         })
+    }
+
+    /// The same, where the numbers count something else than individuals.
+    #[must_use]
+    pub fn counting(self, counted: Counted) -> Self {
+        Self { counted, ..self }
     }
 
     /// How many replicates it rests on.

@@ -1,6 +1,7 @@
 //! The columns of the tables, each named once: CSV and GeoJSON are written from the same lists.
 
-use crate::outcome::{LinkRow, Outcome, PatchRow, ReplicateRow, YearRow};
+use super::occupancy::columns as occupancy;
+use crate::outcome::{Counted, LinkRow, Outcome, PatchRow, ReplicateRow, YearRow};
 
 /// What stands in one column of one row.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -55,11 +56,43 @@ pub(super) struct Column<Row> {
     pub(super) cell: for<'a> fn(&'a Outcome, &'a Row) -> Cell<'a>,
 }
 
-const fn column<Row>(name: &'static str, cell: for<'a> fn(&'a Outcome, &'a Row) -> Cell<'a>) -> Column<Row> {
+pub(super) const fn column<Row>(name: &'static str, cell: for<'a> fn(&'a Outcome, &'a Row) -> Cell<'a>) -> Column<Row> {
     Column { name, cell }
 }
 
-pub(super) const BY_YEAR: &[Column<YearRow>] = &[
+/// The columns of the table by year.
+pub(super) fn by_year(counted: Counted) -> &'static [Column<YearRow>] {
+    match counted {
+        Counted::Individuals => BY_YEAR,
+        Counted::OccupiedPatches => occupancy::BY_YEAR,
+    }
+}
+
+/// The columns of the table by patch.
+pub(super) fn by_patch(counted: Counted) -> &'static [Column<PatchRow>] {
+    match counted {
+        Counted::Individuals => BY_PATCH,
+        Counted::OccupiedPatches => occupancy::BY_PATCH,
+    }
+}
+
+/// The columns of the table by link.
+pub(super) fn by_link(counted: Counted) -> &'static [Column<LinkRow>] {
+    match counted {
+        Counted::Individuals => BY_LINK,
+        Counted::OccupiedPatches => occupancy::BY_LINK,
+    }
+}
+
+/// The columns of the table by replicate.
+pub(super) fn by_replicate(counted: Counted) -> &'static [Column<ReplicateRow>] {
+    match counted {
+        Counted::Individuals => BY_REPLICATE,
+        Counted::OccupiedPatches => occupancy::BY_REPLICATE,
+    }
+}
+
+const BY_YEAR: &[Column<YearRow>] = &[
     column("year", |_, row| row.year.into()),
     column("persistence", |_, row| row.persistence.value.into()),
     column("persistence_low", |_, row| row.persistence.low.into()),
@@ -79,7 +112,7 @@ pub(super) const BY_YEAR: &[Column<YearRow>] = &[
     column("mean_abundance_high", |_, row| row.mean_abundance.high.into()),
 ];
 
-pub(super) const BY_PATCH: &[Column<PatchRow>] = &[
+const BY_PATCH: &[Column<PatchRow>] = &[
     column("patch", |_, row| row.patch.as_str().into()),
     column("area_ha", |_, row| row.area_ha.into()),
     column("capacity", |_, row| row.capacity.into()),
@@ -108,7 +141,7 @@ pub(super) const BY_PATCH: &[Column<PatchRow>] = &[
     column("connectivity_loss_percent", |_, row| row.place.and_then(|place| place.connectivity_loss_percent).into()),
 ];
 
-pub(super) const BY_LINK: &[Column<LinkRow>] = &[
+const BY_LINK: &[Column<LinkRow>] = &[
     column("from", |outcome, row| patch_name(outcome, row.from)),
     column("to", |outcome, row| patch_name(outcome, row.to)),
     column("distance_km", |_, row| row.distance_km.into()),
@@ -117,7 +150,7 @@ pub(super) const BY_LINK: &[Column<LinkRow>] = &[
     column("splits_network", |_, row| row.splits.into()),
 ];
 
-pub(super) const BY_REPLICATE: &[Column<ReplicateRow>] = &[
+const BY_REPLICATE: &[Column<ReplicateRow>] = &[
     column("replicate", |_, row| row.replicate.into()),
     column("extinct_in_year", |_, row| row.extinct_in_year.into()),
     column("quasi_extinct_in_year", |_, row| row.quasi_extinct_in_year.into()),
@@ -126,6 +159,6 @@ pub(super) const BY_REPLICATE: &[Column<ReplicateRow>] = &[
     column("occupied_at_end", |_, row| row.occupied_at_end.into()),
 ];
 
-fn patch_name(outcome: &Outcome, position: u32) -> Cell<'_> {
+pub(super) fn patch_name(outcome: &Outcome, position: u32) -> Cell<'_> {
     outcome.by_patch[position as usize].patch.as_str().into()
 }

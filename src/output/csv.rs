@@ -4,7 +4,7 @@
 use std::fmt::Write as _;
 use std::io;
 
-use super::columns::{BY_LINK, BY_PATCH, BY_REPLICATE, BY_YEAR, Cell, Column};
+use super::columns::{self, Cell, Column};
 use crate::outcome::Outcome;
 
 /// Writes `by_year.csv`.
@@ -12,7 +12,7 @@ use crate::outcome::Outcome;
 /// # Errors
 /// If `to` cannot be written.
 pub fn by_year(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
-    write(outcome, BY_YEAR, &outcome.by_year, to)
+    write(outcome, columns::by_year(outcome.counted), &outcome.by_year, to)
 }
 
 /// Writes `by_patch.csv`.
@@ -20,7 +20,7 @@ pub fn by_year(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
 /// # Errors
 /// If `to` cannot be written.
 pub fn by_patch(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
-    write(outcome, BY_PATCH, &outcome.by_patch, to)
+    write(outcome, columns::by_patch(outcome.counted), &outcome.by_patch, to)
 }
 
 /// Writes `by_link.csv`.
@@ -28,7 +28,7 @@ pub fn by_patch(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
 /// # Errors
 /// If `to` cannot be written.
 pub fn by_link(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
-    write(outcome, BY_LINK, &outcome.by_link, to)
+    write(outcome, columns::by_link(outcome.counted), &outcome.by_link, to)
 }
 
 /// Writes `by_replicate.csv`.
@@ -36,7 +36,7 @@ pub fn by_link(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
 /// # Errors
 /// If `to` cannot be written.
 pub fn by_replicate(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
-    write(outcome, BY_REPLICATE, &outcome.by_replicate, to)
+    write(outcome, columns::by_replicate(outcome.counted), &outcome.by_replicate, to)
 }
 
 fn write<Row>(outcome: &Outcome, columns: &[Column<Row>], rows: &[Row], to: impl io::Write) -> io::Result<()> {

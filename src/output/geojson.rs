@@ -8,7 +8,7 @@ use std::io;
 use geo::{BoundingRect, Centroid, Coord, CoordsIter, Geometry, LineString, MapCoords, MultiPolygon, Polygon};
 use geojson::{Feature, GeometryValue, JsonObject, JsonValue};
 
-use super::columns::{BY_LINK, BY_PATCH, Cell, Column};
+use super::columns::{self, Cell, Column};
 use crate::landscape::{Crs, Landscape};
 use crate::outcome::Outcome;
 
@@ -20,7 +20,7 @@ pub fn by_patch(outcome: &Outcome, landscape: &Landscape, to: impl io::Write) ->
     let rows = outcome.by_patch.iter().zip(&landscape.patches);
     let features = rows.map(|(row, patch)| {
         let shape = wound(&patch.shape, landscape.crs);
-        feature(Some((&shape).into()), properties(outcome, BY_PATCH, row))
+        feature(Some((&shape).into()), properties(outcome, columns::by_patch(outcome.counted), row))
     });
     collection(landscape.crs_member.as_ref(), features, to)
 }
@@ -34,7 +34,7 @@ pub fn by_link(outcome: &Outcome, landscape: &Landscape, to: impl io::Write) -> 
     let features = outcome.by_link.iter().map(|row| {
         let ends = centroids[row.from as usize].zip(centroids[row.to as usize]);
         let line = ends.map(|(from, to)| link_line(from, to, landscape.crs));
-        feature(line, properties(outcome, BY_LINK, row))
+        feature(line, properties(outcome, columns::by_link(outcome.counted), row))
     });
     collection(landscape.crs_member.as_ref(), features, to)
 }

@@ -5,12 +5,13 @@ use std::io;
 
 use serde::Serialize;
 
+use super::occupancy::json as occupancy;
 use super::words::{CAUTIONS, answer};
 use super::{Account, files::RUN_FILES};
 use crate::mistake::Mistake;
 use crate::network;
 use crate::outcome::{
-    CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Customary, Estimate, Outcome, ROLE_MARGIN, Standing, Summary,
+    CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Counted, Customary, Estimate, Outcome, ROLE_MARGIN, Standing, Summary,
 };
 use crate::study::Effort;
 
@@ -41,7 +42,7 @@ struct Document<'a> {
     quasi_extinction: Option<Threshold<'a>>,
     replicates: Replicates,
     inputs: Vec<Input<'a>>,
-    answer: Answer,
+    answer: AnswerOf,
     network: Network,
     files: &'static [&'static str],
     warnings: Vec<Warning<'a>>,
@@ -70,6 +71,14 @@ struct Input<'a> {
     sha256: &'a str,
 }
 
+/// The answer in the terms of what is counted.
+#[derive(Serialize)]
+#[serde(untagged)]
+enum AnswerOf {
+    Individuals(Answer),
+    OccupiedPatches(occupancy::Answer),
+}
+
 #[derive(Serialize)]
 struct Answer {
     sentence: String,
@@ -86,7 +95,7 @@ struct Answer {
 
 /// An estimate with its 95 % interval; an end that is not known is null.
 #[derive(Serialize)]
-struct Interval {
+pub(super) struct Interval {
     value: f64,
     low: f64,
     high: f64,
@@ -94,7 +103,7 @@ struct Interval {
 }
 
 #[derive(Serialize)]
-struct Target {
+pub(super) struct Target {
     persistence_asked: f64,
     years: u32,
     source: &'static str,
@@ -108,7 +117,8 @@ struct Network {
     patches: usize,
     links: usize,
     area_ha: f64,
-    capacity: f64,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    capacity: Option<f64>,
     start: u64,
     structure: Option<Structure>,
 }
@@ -151,11 +161,20 @@ fn document<'a>(outcome: &'a Outcome, account: &'a Account) -> Document<'a> {
         }),
         replicates: Replicates { asked, precision, done: outcome.replicates_done(), complete: account.complete },
         inputs: account.inputs.iter().map(|input| Input { path: &input.path, sha256: &input.sha256 }).collect(),
-        answer: Answer::new(&outcome.summary, answer(outcome, account)),
+        answer: AnswerOf::new(outcome, answer(outcome, account)),
         network: Network::new(outcome),
         files: &RUN_FILES,
         warnings: account.warnings.iter().map(Warning::from).collect(),
         cautions: CAUTIONS,
+    }
+}
+
+impl AnswerOf {
+    fn new(outcome: &Outcome, sentence: String) -> Self {
+        match outcome.counted {
+            Counted::Individuals => Self::Individuals(Answer::new(&outcome.summary, sentence)),
+            Counted::OccupiedPatches => Self::OccupiedPatches(occupancy::Answer::new(&outcome.summary, sentence)),
+        }
     }
 }
 
@@ -182,7 +201,10 @@ impl Network {
             patches: outcome.by_patch.len(),
             links: outcome.by_link.len(),
             area_ha: outcome.by_patch.iter().map(|row| row.area_ha).sum(),
-            capacity: outcome.by_patch.iter().map(|row| row.capacity).sum(),
+            capacity: match outcome.counted {
+                Counted::Individuals => Some(outcome.by_patch.iter().map(|row| row.capacity).sum()),
+                Counted::OccupiedPatches => None,
+            },
             start: outcome.by_patch.iter().map(|row| row.start).sum(),
             structure: outcome.structure.as_ref().map(|structure| {
                 let name = |position: usize| outcome.by_patch[position].patch.clone();

@@ -8,6 +8,7 @@ mod first_study;
 mod folder;
 pub mod geojson;
 pub mod json;
+mod occupancy;
 mod terminal;
 #[cfg(test)]
 mod tests;
@@ -17,6 +18,7 @@ mod words;
 pub use files::{ALL_FILES, RUN_FILES};
 pub use first_study::{first_study, write_new};
 pub use folder::{Draft, Existing, Folder};
+pub use occupancy::OccupancyUnderstood;
 pub use terminal::summary;
 pub use understood::Understood;
 pub use words::{CAUTIONS, answer};

@@ -1,9 +1,10 @@
 //! The summary that is shown when a run ends: the answer first, at most 100 characters wide.
 
 use super::Account;
+use super::occupancy::terminal as occupancy;
 use super::words::{CAUTIONS, amount, answer, chance, counted, mean};
 use crate::outcome::{
-    CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Customary, Outcome, PatchRow, ROLE_MARGIN, Standing, YearRow,
+    CUSTOMARY_PERSISTENCE, CUSTOMARY_YEARS, Counted, Customary, Outcome, PatchRow, ROLE_MARGIN, Standing, YearRow,
 };
 use crate::study::QuasiExtinction;
 
@@ -17,10 +18,13 @@ const PATCHES_SHOWN: usize = 5;
 const NAME_WIDTH: usize = 26;
 
 /// The most decimals of a chance in a table.
-const DECIMALS: usize = 3;
+pub(super) const DECIMALS: usize = 3;
 
 /// The summary of an outcome, ending in a line break.
 pub fn summary(outcome: &Outcome, account: &Account) -> String {
+    if outcome.counted == Counted::OccupiedPatches {
+        return occupancy::summary(outcome, account);
+    }
     let parts = [
         format!("{}\n", answer(outcome, account)),
         facts(outcome, account),
@@ -66,7 +70,7 @@ fn fewer_than(threshold: &QuasiExtinction) -> String {
     format!("fewer than {}{which}", counted(threshold.below.into(), "individual"))
 }
 
-fn customary_words(customary: &Customary) -> String {
+pub(super) fn customary_words(customary: &Customary) -> String {
     let standing = match customary.standing {
         Standing::Above => "met",
         Standing::Below => "missed",
@@ -77,15 +81,20 @@ fn customary_words(customary: &Customary) -> String {
 
 fn years(outcome: &Outcome) -> String {
     let mut rows = vec![year_cells("year", "persists", "quasi-extinct", "mean abundance (5 to 95 %)", "patches")];
-    let mut shown: Vec<u64> = (0..=YEARS_SHOWN).map(|step| nearest_year(outcome.horizon, step)).collect();
-    shown.dedup();
-    rows.extend(shown.iter().map(|year| year_row(&outcome.by_year[*year as usize])));
+    rows.extend(shown_years(outcome).into_iter().map(year_row));
     if outcome.quasi_extinction.is_none() {
         rows.iter_mut().for_each(|row| drop(row.remove(2)));
     }
     let sides = [Side::Right; 5];
     let table = lines(rows, &sides).concat();
     format!("By year, with 95 % Monte Carlo intervals; patches: mean number occupied\n{table}")
+}
+
+/// The rows of the years that are shown, evenly spread up to the horizon.
+pub(super) fn shown_years(outcome: &Outcome) -> Vec<&YearRow> {
+    let mut shown: Vec<u64> = (0..=YEARS_SHOWN).map(|step| nearest_year(outcome.horizon, step)).collect();
+    shown.dedup();
+    shown.into_iter().map(|year| &outcome.by_year[year as usize]).collect()
 }
 
 /// The year that lies `step` of [`YEARS_SHOWN`] on the way to the horizon, rounded half up.
@@ -111,6 +120,21 @@ fn year_cells(year: &str, persists: &str, quasi_extinct: &str, abundance: &str, 
 }
 
 fn patches(outcome: &Outcome) -> String {
+    let header = ["patch", "occupied at the end", "share of years", "abundance", "net export", "role"];
+    let sides = [Side::Left, Side::Right, Side::Right, Side::Right, Side::Right, Side::Left];
+    let table = ranked_table(outcome, header.map(str::to_owned).to_vec(), &sides, patch_row);
+    let margin = 100.0 * ROLE_MARGIN;
+    let title = format!("Patches, most secure first; source or sink: net export surely beyond {margin} % of abundance");
+    format!("{title}\n{table}")
+}
+
+/// The most secure and the least secure patches as a table.
+pub(super) fn ranked_table(
+    outcome: &Outcome,
+    header: Vec<String>,
+    sides: &[Side],
+    cells: fn(&PatchRow) -> Vec<String>,
+) -> String {
     let mut ranked: Vec<&PatchRow> = outcome.by_patch.iter().collect();
     ranked.sort_by(|a, b| {
         let secure =
@@ -121,16 +145,13 @@ fn patches(outcome: &Outcome) -> String {
     if split {
         ranked.drain(PATCHES_SHOWN..ranked.len() - PATCHES_SHOWN);
     }
-    let header = ["patch", "occupied at the end", "share of years", "abundance", "net export", "role"];
-    let mut rows = vec![header.map(str::to_owned).to_vec()];
-    rows.extend(ranked.into_iter().map(patch_row));
-    let mut table = lines(rows, &[Side::Left, Side::Right, Side::Right, Side::Right, Side::Right, Side::Left]);
+    let mut rows = vec![header];
+    rows.extend(ranked.into_iter().map(cells));
+    let mut table = lines(rows, sides);
     if split {
         table.insert(1 + PATCHES_SHOWN, "  ...\n".to_owned());
     }
-    let margin = 100.0 * ROLE_MARGIN;
-    let title = format!("Patches, most secure first; source or sink: net export surely beyond {margin} % of abundance");
-    format!("{title}\n{}", table.concat())
+    table.concat()
 }
 
 fn patch_row(row: &PatchRow) -> Vec<String> {
@@ -145,7 +166,7 @@ fn patch_row(row: &PatchRow) -> Vec<String> {
 }
 
 /// A name that fits its column and stays on its line.
-fn shortened(name: &str) -> String {
+pub(super) fn shortened(name: &str) -> String {
     let name: String = name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect();
     if name.chars().count() <= NAME_WIDTH {
         return name;

@@ -10,7 +10,7 @@ use crate::environment::Correlation;
 use crate::landscape::Crs;
 use crate::mistake::Mistake;
 use crate::network::Structure;
-use crate::study::Effort;
+use crate::study::{Effort, Settings};
 
 /// The most names of patches or links that a line lists.
 const NAMES_SHOWN: usize = 8;
@@ -28,6 +28,8 @@ pub struct Understood {
     species: Species,
     weather: String,
     warnings: Vec<String>,
+    #[serde(skip)]
+    head: String,
 }
 
 #[derive(Debug, Serialize)]
@@ -102,6 +104,7 @@ impl Understood {
             species: Species::new(&prepared.life_history, settings.generation_years),
             weather: weather(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
+            head: head(settings),
         }
     }
 
@@ -115,14 +118,13 @@ impl Understood {
 
     /// For the terminal.
     pub fn text(&self) -> String {
-        let effort = match (self.replicates, self.precision) {
-            (Some(replicates), _) => counted(replicates.into(), "replicate"),
-            (None, precision) => format!("replicates until persistence is known to {}", precision.unwrap_or(0.0)),
-        };
-        let head =
-            format!("{}: {}, {effort}, seed {}\n", self.title, counted(self.horizon_years.into(), "year"), self.seed);
-        let parts =
-            [head, self.landscape.text(), self.network_text(), self.species.text(), format!("{}\n", self.weather)];
+        let parts = [
+            self.head.clone(),
+            self.landscape.text(),
+            self.network_text(),
+            self.species.text(),
+            format!("{}\n", self.weather),
+        ];
         parts.join("\n")
     }
 
@@ -315,6 +317,16 @@ impl Species {
     }
 }
 
+/// The first line: what is to be run.
+pub(super) fn head(settings: &Settings) -> String {
+    let Settings { title, horizon, seed, .. } = settings;
+    let effort = match settings.effort {
+        Effort::Replicates(replicates) => counted(replicates.into(), "replicate"),
+        Effort::Precision(precision) => format!("replicates until persistence is known to {precision}"),
+    };
+    format!("{title}: {}, {effort}, seed {seed}\n", counted((*horizon).into(), "year"))
+}
+
 fn column_sum(matrix: &Matrix, column: usize) -> f64 {
     (0..matrix.size()).map(|row| matrix[(row, column)]).sum()
 }
@@ -351,7 +363,7 @@ fn density_in_words(life_history: &LifeHistory) -> String {
     }
 }
 
-fn weather(prepared: &Prepared) -> String {
+pub(super) fn weather(prepared: &Prepared) -> String {
     if prepared.life_history.varies() {
         let environment = &prepared.environment;
         let between_patches = match environment.correlation.as_ref().map(|said| said.value) {
@@ -362,26 +374,27 @@ fn weather(prepared: &Prepared) -> String {
             Some(Correlation::Full) => "1: all patches have the same years".to_owned(),
             Some(Correlation::None) | None => "0: every patch has years of its own".to_owned(),
         };
-        let rows = vec![
-            row("correlation of patches", &between_patches),
-            row("of survival with fecundity", &short(environment.between_rates)),
-            row("of a year with the next", &short(environment.autocorrelation)),
-        ];
+        let mut rows = vec![row("correlation of patches", &between_patches)];
+        // The e and y of an occupancy model have one deviate.
+        if prepared.life_history.occupancy.is_none() {
+            rows.push(row("of survival with fecundity", &short(environment.between_rates)));
+        }
+        rows.push(row("of a year with the next", &short(environment.autocorrelation)));
         block("Weather", rows).trim_end().to_owned()
     } else {
         "Weather: no rate varies between years".to_owned()
     }
 }
 
-fn block(title: &str, rows: Vec<Vec<String>>) -> String {
+pub(super) fn block(title: &str, rows: Vec<Vec<String>>) -> String {
     format!("{title}\n{}", lines(rows, &[Side::Left, Side::Left]).concat())
 }
 
-fn row(label: &str, text: &str) -> Vec<String> {
+pub(super) fn row(label: &str, text: &str) -> Vec<String> {
     vec![label.to_owned(), text.to_owned()]
 }
 
-fn names(names: &[String]) -> String {
+pub(super) fn names(names: &[String]) -> String {
     if names.is_empty() {
         return "none".to_owned();
     }
@@ -391,12 +404,12 @@ fn names(names: &[String]) -> String {
 }
 
 /// Hectares, finer where there are few.
-fn ha(area: f64) -> String {
+pub(super) fn ha(area: f64) -> String {
     if area < 10.0 { format!("{area:.2}") } else { amount(area) }
 }
 
 /// A rate to four significant digits, without zeros at the end.
-fn short(number: f64) -> String {
+pub(super) fn short(number: f64) -> String {
     let text = format!("{number:.4}");
     text.trim_end_matches('0').trim_end_matches('.').to_owned()
 }

@@ -22,6 +22,8 @@ pub enum Purpose {
     Destinations(u32),
     /// who goes where there are too many
     Surplus,
+    /// whether a patch that is full or empty is full at the next census
+    Turnover,
 }
 
 impl Purpose {
@@ -35,6 +37,7 @@ impl Purpose {
             Self::Destinations(stage) => (6, stage),
             Self::Surplus => (7, 0),
             Self::Advance(stage) => (8, stage),
+            Self::Turnover => (40, 0),
         };
         number << 32 | index as u64
     }

@@ -8,5 +8,6 @@
 mod branching;
 mod chains;
 mod moments;
+mod occupancy;
 mod support;
 mod weather;

@@ -157,13 +157,13 @@ impl Case {
 }
 
 /// A seed from a name, so that nobody chose it.
-fn seed(name: &str) -> u64 {
+pub(crate) fn seed(name: &str) -> u64 {
     name.bytes().fold(0, |seed: u64, byte| (seed * 131 + u64::from(byte)) % 1_000_000_007)
 }
 
 /// What was seen of a case.
 pub(crate) struct Seen {
-    name: &'static str,
+    pub(crate) name: &'static str,
     pub(crate) tallies: Tallies,
 }
 

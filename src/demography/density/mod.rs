@@ -57,6 +57,18 @@ pub struct Density {
 }
 
 impl Density {
+    /// Nothing holds numbers: for a life history without numbers.
+    pub(super) fn none() -> Self {
+        Self {
+            form: "none".to_owned(),
+            ceiling: false,
+            curve: None,
+            on_survival: false,
+            on_fecundity: false,
+            at_capacity: None,
+        }
+    }
+
     /// Whether the study asks for a curve that has nothing to scale, since numbers do not grow.
     pub fn is_idle(&self) -> bool {
         self.curve.is_none() && !self.ceiling && self.form != "none"

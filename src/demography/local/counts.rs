@@ -51,5 +51,6 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         density,
         model: Arc::new(Counts),
         emigration_said: emigration.filter(|said| said.value > 0.0),
+        occupancy: None,
     })
 }

@@ -3,7 +3,10 @@
 //! A new kind is one file and one line in [`KINDS`].
 
 mod counts;
+mod occupancy;
 mod stages;
+
+pub use occupancy::{Occupancy, Turnover};
 
 use std::fmt::Debug;
 
@@ -43,7 +46,8 @@ pub trait LocalModel: Debug + Send + Sync {
 pub(super) type ReadKind = fn(&Table<'_>) -> Option<LifeHistory>;
 
 /// The kinds of life history, by the words that the study uses.
-pub(super) const KINDS: &[(&str, ReadKind)] = &[("stages", stages::read), ("counts", counts::read)];
+pub(super) const KINDS: &[(&str, ReadKind)] =
+    &[("stages", stages::read), ("counts", counts::read), ("occupancy", occupancy::read)];
 
 /// Adds without passing the largest count; says whether it had to stop.
 fn add(count: &mut u32, more: u32) -> bool {

@@ -140,6 +140,7 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         density,
         model: Arc::new(Stages { fates, young: young? }),
         emigration_said: cycle.emigration_said,
+        occupancy: None,
     })
 }
 
