@@ -44,6 +44,8 @@ pub struct Model {
     pub(super) ceiling: bool,
     pub(super) rates: Rates,
     pub(super) movement: Option<Movement>,
+    /// links of the network, whether anybody moves along them or not
+    pub(super) n_links: usize,
     pub(super) threshold: Option<Threshold>,
 }
 
@@ -68,8 +70,8 @@ impl Model {
         self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
     }
 
-    /// Links along which individuals may move.
+    /// Links of the network.
     pub fn n_links(&self) -> usize {
-        self.movement.as_ref().map_or(0, Movement::n_links)
+        self.n_links
     }
 }

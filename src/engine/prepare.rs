@@ -72,6 +72,10 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let landscape = landscape_table.and_then(|table| Landscape::read(&table, document, &stage_names));
     root.finish();
 
+    if document.has_faults() {
+        // A table may stand behind a fault: nothing can be said of what is missing.
+        return None;
+    }
     let mut settings = settings?;
     let (life_history, environment, landscape) = (life_history?, environment?, landscape?);
     let dispersal = match dispersal {
@@ -174,7 +178,10 @@ fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory)
             if counts.iter().all(|count| *count == 0) {
                 let place = document.root().place().clone();
                 let expected = "at least one individual in at least one patch";
-                document.mistake(Mistake::new(place, "landscape.start leaves every patch empty", expected));
+                let mistake = Mistake::new(place, "landscape.start leaves every patch empty", expected);
+                document.mistake(mistake.advise(
+                    "look at the property or table that start comes from; a share of a small capacity rounds to 0",
+                ));
                 return None;
             }
             Some(counts)

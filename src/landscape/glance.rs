@@ -6,7 +6,7 @@ use serde_json::{Map, Value};
 
 use super::findings::Findings;
 use super::geojson::{features_of, parse};
-use crate::mistake::Failure;
+use crate::mistake::{Failure, Mistake, Place};
 use crate::study::Document;
 
 /// What a file of patches holds.
@@ -54,7 +54,7 @@ impl Glance {
     /// # Errors
     /// If the file cannot be read, is not JSON, or is no FeatureCollection with at least one feature.
     pub fn at(file: &Path) -> Result<Self, Failure> {
-        let bytes = std::fs::read(file).map_err(|error| Failure::system(file, "read", error))?;
+        let bytes = std::fs::read(file).map_err(|error| unreadable(file, error))?;
         let document = Document::parse(file, String::new());
         let findings = Findings::new(&document);
         let features = parse(file, &bytes, &findings).and_then(|mut root| features_of(file, &mut root, &findings));
@@ -76,6 +76,15 @@ impl Glance {
 }
 
 /// Whether any position is farther from the origin than degrees go.
+fn unreadable(file: &Path, error: std::io::Error) -> Failure {
+    let found = match error.kind() {
+        std::io::ErrorKind::NotFound => "no such file",
+        std::io::ErrorKind::IsADirectory => "a folder",
+        _ => return Failure::system(file, "read", error),
+    };
+    Mistake::new(Place::file(file), found, "a GeoJSON file of patches").into()
+}
+
 fn beyond_degrees(coordinates: &Value) -> bool {
     match coordinates.as_array().map(Vec::as_slice) {
         Some([Value::Number(x), Value::Number(y), ..]) => {

@@ -1,12 +1,14 @@
 //! The TOML document as a tree of owned nodes, each with its place, and the mistakes found while walking it.
 
 use std::cell::RefCell;
+use std::collections::BTreeSet;
 use std::ops::Range;
 use std::path::{Path, PathBuf};
 
 use sha2::{Digest, Sha256};
 use toml::de::{DeTable, DeValue};
 
+use super::faults::{LIST_WITHOUT_COMMA, plainly};
 use super::table::{Said, Table};
 use crate::mistake::{Failure, Mistake, Mistakes, Place};
 
@@ -69,6 +71,9 @@ impl Document {
             std::io::ErrorKind::NotFound => Mistake::new(Place::file(file), "no such file", "a study file in TOML")
                 .advise("check the path, or write a first study with `eyot new DIR --patches FILE`")
                 .into(),
+            std::io::ErrorKind::IsADirectory => Mistake::new(Place::file(file), "a folder", "a study file in TOML")
+                .advise("name the file in it, such as study.toml")
+                .into(),
             _ => Failure::system(file, "read", error),
         })?;
         let text = String::from_utf8(bytes).map_err(|error| {
@@ -97,9 +102,7 @@ impl Document {
             warnings: RefCell::default(),
             inputs: RefCell::new(vec![study]),
         };
-        for fault in faults {
-            document.mistake(document.fault(&fault));
-        }
+        document.note_faults(&faults);
         document
     }
 
@@ -136,7 +139,12 @@ impl Document {
                 Some((path, bytes))
             }
             Err(error) => {
-                let why = format!("a file that can be read; {} cannot be: {error}", path.display());
+                let path = path.display();
+                let why = match error.kind() {
+                    std::io::ErrorKind::NotFound => format!("the path of a file; there is none at {path}"),
+                    std::io::ErrorKind::IsADirectory => format!("the path of a file; {path} is a folder"),
+                    _ => format!("a file that can be read; {path} cannot be: {error}"),
+                };
                 self.mistake(said.mistake(why).advise("paths are relative to the study file"));
                 None
             }
@@ -173,7 +181,7 @@ impl Document {
     }
 
     /// Whether the TOML is at fault somewhere, so that keys may be there that the parser did not reach.
-    pub(super) fn has_faults(&self) -> bool {
+    pub fn has_faults(&self) -> bool {
         self.has_faults
     }
 
@@ -189,6 +197,20 @@ impl Document {
         if shown.len() < whole.len() { format!("{} ...", shown.trim_end()) } else { shown }
     }
 
+    /// Notes the first fault of each line, since the parser's others there mostly follow from it, and but one for all the
+    /// lines that a list swallows where it is not closed.
+    fn note_faults(&self, faults: &[toml::de::Error]) {
+        let mut lines_told = BTreeSet::new();
+        let mut in_a_list = false;
+        for fault in faults {
+            let line = self.line_starts.partition_point(|start| *start <= start_of(fault));
+            let was_in_a_list = std::mem::replace(&mut in_a_list, fault.message().starts_with(LIST_WITHOUT_COMMA));
+            if lines_told.insert(line) && !(in_a_list && was_in_a_list) {
+                self.mistake(self.fault(fault));
+            }
+        }
+    }
+
     fn fault(&self, fault: &toml::de::Error) -> Mistake {
         let start = self.text.floor_char_boundary(start_of(fault));
         let line_start = self.text[..start].rfind('\n').map_or(0, |newline| newline + 1);
@@ -198,12 +220,8 @@ impl Document {
             nothing if nothing.is_empty() => "an empty line".to_owned(),
             words => words,
         };
-        match fault.message() {
-            "duplicate key" => {
-                Mistake::new(self.place(start), found, "each key once in its table").advise("take one of the two out")
-            }
-            message => Mistake::new(self.place(start), found, format!("TOML: {message}")),
-        }
+        let (expected, advice) = plainly(fault.message(), &self.text[line_start..line_end]);
+        Mistake { advice, ..Mistake::new(self.place(start), found, expected) }
     }
 }
 

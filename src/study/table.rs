@@ -206,6 +206,11 @@ impl<'d> Table<'d> {
             Item::Number(said) if said.value.is_infinite() => {
                 self.refuse(item, &format!("{numbers}, and not too large to hold"))
             }
+            Item::Number(said) if numbers == PROBABILITY && said.value > 2.0 && said.value <= 100.0 => {
+                let advice = format!("a percentage is written as a share: {}", said.value / 100.0);
+                self.document.mistake(said.mistake(numbers.to_string()).advise(advice));
+                None
+            }
             other => self.refuse(other, &numbers.to_string()),
         }
     }

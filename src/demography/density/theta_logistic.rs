@@ -26,12 +26,12 @@ impl Curve for ThetaLogistic {
 /// Reads `theta`, above 0.
 pub(super) fn make(table: &Table<'_>, scale: Scale) -> Option<Arc<dyn Curve>> {
     let theta = table.number("theta", POSITIVE);
-    if !table.has("theta") {
-        table.missing("theta", "a number above 0: below 1 crowding bites early, above 1 late");
-    }
     if !scale.counts {
         table.mistake(table.address("form"), "theta-logistic in a life history of kind = \"counts\" only");
         return None;
+    }
+    if !table.has("theta") {
+        table.missing("theta", "a number above 0: below 1 crowding bites early, above 1 late");
     }
     Some(Arc::new(ThetaLogistic { log_growth: scale.log_growth, theta: theta?.value }))
 }
