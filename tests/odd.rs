@@ -1,8 +1,6 @@
 //! Studies that are odd but lawful, each in a folder of its own under `tests/odd`, with what the program notes about them
 //! beside it. After a change of words, see `tests/broken.rs`.
 
-#![expect(clippy::unwrap_used, reason = "a test stops where a file is not as it should be")]
-
 use std::fs;
 use std::path::Path;
 

@@ -97,7 +97,7 @@ fn more_replicates_only_add() {
 
 #[test]
 fn a_precision_is_a_number_of_replicates_found_out() {
-    for (precision, least) in [(0.03, 1000), (0.02, 1500)] {
+    for (precision, least) in [(0.03, 1000), (0.01, 1500)] {
         // Survival that leaves the network in doubt, so that 1,000 replicates are not enough for the narrower one.
         let doubt = ("mean = 0.35", "mean = 0.2");
         let site = Site::new(&[("replicates = 40", &format!("precision = {precision}")), doubt]);

@@ -122,6 +122,9 @@ fn unreadable(place: Place, bytes: &[u8], error: &serde_json::Error) -> Mistake 
         return Mistake::new(place, "a number too large to hold", "a coordinate or value within reason")
             .advise("look for a broken value here in the GIS, correct it and export again");
     }
+    if message.starts_with("trailing characters") {
+        return Mistake::new(place, "more text after the end of the first object", COLLECTION).advise(EXPORT);
+    }
     let message = message.split(" at line ").next().unwrap_or_default();
     Mistake::new(place, format!("not JSON: {message}"), COLLECTION).advise(EXPORT)
 }

@@ -8,7 +8,7 @@ use std::path::{Path, PathBuf};
 use sha2::{Digest, Sha256};
 use toml::de::{DeTable, DeValue};
 
-use super::faults::{LIST_WITHOUT_COMMA, plainly};
+use super::faults::{is_inside, plainly};
 use super::table::{Said, Table};
 use crate::mistake::{Failure, Mistake, Mistakes, Place};
 
@@ -198,14 +198,14 @@ impl Document {
     }
 
     /// Notes the first fault of each line, since the parser's others there mostly follow from it, and but one for all the
-    /// lines that a list swallows where it is not closed.
+    /// lines that a list or inline table swallows where it is not closed.
     fn note_faults(&self, faults: &[toml::de::Error]) {
         let mut lines_told = BTreeSet::new();
-        let mut in_a_list = false;
+        let mut inside = false;
         for fault in faults {
             let line = self.line_starts.partition_point(|start| *start <= start_of(fault));
-            let was_in_a_list = std::mem::replace(&mut in_a_list, fault.message().starts_with(LIST_WITHOUT_COMMA));
-            if lines_told.insert(line) && !(in_a_list && was_in_a_list) {
+            let was_inside = std::mem::replace(&mut inside, is_inside(fault.message()));
+            if lines_told.insert(line) && !(inside && was_inside) {
                 self.mistake(self.fault(fault));
             }
         }
