@@ -148,7 +148,7 @@ fn without_links_and_with_weather_of_their_own_patches_die_alone() {
         let own: Vec<f64> = site.numbers("outcome/by_patch.csv", "occupied_at_end").iter().map(|p| 1.0 - p).collect();
         assert!(own.iter().all(|q| (0.1..0.9).contains(q)), "{own:?}: the study shows nothing");
         let product: f64 = own.iter().product();
-        let explained: f64 = own.iter().map(|q| (product / q).powi(2) * q * (1.0 - q)).sum();
+        let explained: f64 = own.iter().map(|q| product * product * (1.0 - q) / q).sum();
         let se = ((product * (1.0 - product) - explained) / N).sqrt();
         (network - product) / se
     };
