@@ -54,9 +54,9 @@ fn files_that_are_no_geojson() {
     let nan = collection(&["{\"type\":\"Point\",\n\"coordinates\":[5.0,NaN]}"]);
     assert_refused(&read_bytes(nan.as_bytes()), &["p.geojson:2:", "NaN", "not JSON"]);
     let huge = collection(&["{\"type\":\"Point\",\"coordinates\":[5.0,1e999]}"]);
-    assert_refused(&read_bytes(huge.as_bytes()), &["number out of range"]);
+    assert_refused(&read_bytes(huge.as_bytes()), &["a number too large to hold"]);
     let missing = read(TABLE, &[], &[]);
-    assert_refused(&missing, &["study.toml:2:1", "cannot be", "relative to the study file"]);
+    assert_refused(&missing, &["study.toml:2:1", "there is none at", "relative to the study file"]);
 }
 
 #[test]

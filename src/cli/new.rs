@@ -31,6 +31,10 @@ pub(super) fn main(arguments: &Arguments) -> Result<u8, Failure> {
             .advise("choose another folder")
             .into());
     }
+    if arguments.folder.exists() && !arguments.folder.is_dir() {
+        let mistake = Mistake::new(Place::file(&arguments.folder), "a file", "a folder, or a name that is free");
+        return Err(mistake.advise("name another folder").into());
+    }
     fs::create_dir_all(&arguments.folder)
         .map_err(|error| Failure::system(&arguments.folder, "make the folder", error))?;
     let patches = seen_from(&arguments.folder, &arguments.patches)?;

@@ -91,6 +91,10 @@ const MOST_A_YEAR: f64 = 1e9;
 /// The mistake of an sd that no distribution with this mean and law can have, if it is one.
 pub(super) fn impossible_sd(sd: &Said<f64>, mean: f64, law: Law) -> Option<Mistake> {
     match law {
+        Law::Beta if sd.value > 0.0 && largest_sd(mean) <= 0.0 => {
+            let expected = format!("0, since a probability of mean {mean} cannot vary");
+            Some(sd.mistake(expected).advise("leave the sd out"))
+        }
         Law::Beta if sd.value > 0.0 && sd.value >= largest_sd(mean) => {
             let most = (largest_sd(mean) * 1000.0).floor() / 1000.0;
             let expected =

@@ -109,6 +109,7 @@ pub(super) fn compile(
         ceiling: density.ceiling,
         movement: Movement::compile(network, &life_history.stages),
         turnovers: None,
+        n_links: network.links.len(),
         threshold: settings.quasi_extinction.as_ref().map(|threshold| Threshold {
             below: u64::from(threshold.below),
             stages: if counted_stages.is_empty() { (0..n_stages).collect() } else { counted_stages },

@@ -48,6 +48,8 @@ pub struct Model {
     pub(super) movement: Option<Movement>,
     /// where patches are full or empty, what takes the place of local dynamics and dispersal
     pub(super) turnovers: Option<Turnovers>,
+    /// links of the network, whether anybody moves along them or not
+    pub(super) n_links: usize,
     pub(super) threshold: Option<Threshold>,
 }
 
@@ -79,9 +81,8 @@ impl Model {
         self.turnovers.as_ref()?.occupied_at_rest(e, y)
     }
 
-    /// Links along which individuals may move, or patches be colonised.
+    /// Links of the network.
     pub fn n_links(&self) -> usize {
-        let moving = self.movement.as_ref().map_or(0, Movement::n_links);
-        self.turnovers.as_ref().map_or(moving, Turnovers::n_links)
+        self.n_links
     }
 }

@@ -50,10 +50,6 @@ impl Movement {
         })
     }
 
-    pub(super) fn n_links(&self) -> usize {
-        self.targets.len()
-    }
-
     /// Draws the emigrants of a patch and where they arrive.
     pub(super) fn leave(&self, state: &mut State, patch: usize, place: PlaceKey) {
         for &(stage, chance) in &self.movers {

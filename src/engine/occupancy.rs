@@ -39,10 +39,6 @@ impl Turnovers {
         }
     }
 
-    pub(super) fn n_links(&self) -> usize {
-        self.targets.len()
-    }
-
     /// Steps 3 and 4 of the year: who dies out and who is colonised, by what was occupied at the last census.
     pub(super) fn step(&self, model: &Model, state: &mut State, key: YearKey) {
         self.connect(state);

@@ -80,6 +80,10 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let landscape = landscape_table.and_then(|table| Landscape::read(&table, document, &stage_names));
     root.finish();
 
+    if document.has_faults() {
+        // A table may stand behind a fault: nothing can be said of what is missing.
+        return None;
+    }
     // Every check is made whose own inputs could be read, so that one run shows as much as it can.
     if let (Some(life_history), Some(environment)) = (&life_history, &environment) {
         match life_history.occupancy {
@@ -226,11 +230,15 @@ fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory)
             warnings.into_iter().for_each(|warning| document.warning(warning));
             if counts.iter().all(|count| *count == 0) {
                 let place = document.root().place().clone();
-                let expected = match life_history.occupancy {
-                    Some(_) => "at least one occupied patch",
-                    None => "at least one individual in at least one patch",
+                let (expected, advice) = match life_history.occupancy {
+                    Some(_) => ("at least one occupied patch", "look at the property or table that start comes from"),
+                    None => (
+                        "at least one individual in at least one patch",
+                        "look at the property or table that start comes from; a share of a small capacity rounds to 0",
+                    ),
                 };
-                document.mistake(Mistake::new(place, "landscape.start leaves every patch empty", expected));
+                let mistake = Mistake::new(place, "landscape.start leaves every patch empty", expected);
+                document.mistake(mistake.advise(advice));
                 return None;
             }
             Some(counts)

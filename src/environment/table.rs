@@ -55,7 +55,8 @@ impl EnvironmentTable {
 fn read_correlation(table: &Table<'_>, item: Item<'_>) -> Option<Said<Correlation>> {
     match item {
         Item::Table(inner) => read_reach(inner),
-        Item::Text(_) => table.choice_of(&item, &[("none", Correlation::None), ("full", Correlation::Full)]),
+        Item::Text(said) if said.value == "none" => Some(said.map(|_| Correlation::None)),
+        Item::Text(said) if said.value == "full" => Some(said.map(|_| Correlation::Full)),
         other => {
             other.refuse(table.document(), "\"none\", \"full\" or { reach_km = .. }");
             None
@@ -137,7 +138,7 @@ mod tests {
             read("correlation = { nugget = 0.1 }").unwrap_err()[0].0,
             "environment.correlation.reach_km is missing"
         );
-        assert_eq!(read("correlation = \"some\"").unwrap_err()[0].1, "\"none\" or \"full\"");
+        assert_eq!(read("correlation = \"some\"").unwrap_err()[0].1, "\"none\", \"full\" or { reach_km = .. }");
         assert_eq!(read("correlation = 12").unwrap_err()[0].0, "environment.correlation = 12");
         assert_eq!(read("correlation = { reach_km = nan }").unwrap_err().len(), 1);
     }

@@ -60,6 +60,10 @@ pub(super) fn read(
     let values = features_of(file, &mut root, findings)?;
     let raw: Vec<Raw> =
         values.into_iter().enumerate().filter_map(|(index, value)| raw(file, index, value, findings)).collect();
+    if raw.is_empty() {
+        // Each has been noted; of properties that nothing has there is nothing to say.
+        return None;
+    }
     let naming = Naming::settle(&raw, file, id, findings);
     let features: Vec<Feature> = raw
         .into_iter()
@@ -114,6 +118,13 @@ fn unreadable(place: Place, bytes: &[u8], error: &serde_json::Error) -> Mistake 
             .advise("give the missing or infinite value in the GIS, or delete it, and export again");
     }
     let message = error.to_string();
+    if message.starts_with("number out of range") {
+        return Mistake::new(place, "a number too large to hold", "a coordinate or value within reason")
+            .advise("look for a broken value here in the GIS, correct it and export again");
+    }
+    if message.starts_with("trailing characters") {
+        return Mistake::new(place, "more text after the end of the first object", COLLECTION).advise(EXPORT);
+    }
     let message = message.split(" at line ").next().unwrap_or_default();
     Mistake::new(place, format!("not JSON: {message}"), COLLECTION).advise(EXPORT)
 }
@@ -184,7 +195,7 @@ impl<'s> Naming<'s> {
             let there = is_anywhere(raw.iter().map(|raw| &raw.properties), said, findings);
             return there.then_some(Self::Property(&said.value));
         }
-        if raw.iter().any(|raw| raw.id.is_some()) || raw.is_empty() {
+        if raw.iter().any(|raw| raw.id.is_some()) {
             return Some(Self::Id);
         }
         let names = property_names(raw.iter().map(|raw| &raw.properties)).join(", ");

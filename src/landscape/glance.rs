@@ -54,13 +54,7 @@ impl Glance {
     /// # Errors
     /// If the file cannot be read, is not JSON, or is no FeatureCollection with at least one feature.
     pub fn at(file: &Path) -> Result<Self, Failure> {
-        let bytes = std::fs::read(file).map_err(|error| match error.kind() {
-            std::io::ErrorKind::NotFound => {
-                let mistake = Mistake::new(Place::file(file), "no such file", "a GeoJSON file of patches");
-                mistake.advise("check the path; export the layer of patches from the GIS as GeoJSON").into()
-            }
-            _ => Failure::system(file, "read", error),
-        })?;
+        let bytes = std::fs::read(file).map_err(|error| unreadable(file, error))?;
         let document = Document::parse(file, String::new());
         let findings = Findings::new(&document);
         let features = parse(file, &bytes, &findings).and_then(|mut root| features_of(file, &mut root, &findings));
@@ -82,6 +76,15 @@ impl Glance {
 }
 
 /// Whether any position is farther from the origin than degrees go.
+fn unreadable(file: &Path, error: std::io::Error) -> Failure {
+    let found = match error.kind() {
+        std::io::ErrorKind::NotFound => "no such file",
+        std::io::ErrorKind::IsADirectory => "a folder",
+        _ => return Failure::system(file, "read", error),
+    };
+    Mistake::new(Place::file(file), found, "a GeoJSON file of patches").into()
+}
+
 fn beyond_degrees(coordinates: &Value) -> bool {
     match coordinates.as_array().map(Vec::as_slice) {
         Some([Value::Number(x), Value::Number(y), ..]) => {

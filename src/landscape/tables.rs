@@ -115,15 +115,10 @@ impl Rows {
         for row in std::mem::take(&mut table.rows) {
             let cell = &row.cells[patch];
             let Some(feature) = name_of_cell(cell, names) else {
-                let mut mistake = Mistake::new(
-                    table.place(row.line),
-                    format!("patch = {cell}"),
-                    "the name of a patch of the landscape",
-                );
-                if let Some(near) = nearest_word(cell, names.keys().copied()) {
-                    mistake = mistake.advise(format!("write {near}, or take the row out"));
-                }
-                findings.mistake("unknown patch", mistake);
+                let found = format!("patch = {cell}");
+                let mistake = Mistake::new(table.place(row.line), found, "the name of a patch of the landscape");
+                let near = nearest_word(cell, names.keys().copied()).unwrap_or("the name as the landscape has it");
+                findings.mistake("unknown patch", mistake.advise(format!("write {near}, or take the row out")));
                 continue;
             };
             if let Some(earlier) = lines.insert(*feature, row.line) {

@@ -2,7 +2,7 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
-use crate::mistake::{Mistake, Mistakes, Place};
+use crate::mistake::{Mistake, Mistakes, Place, nearest_word};
 use crate::study::{CsvRow, CsvTable, Document, PROBABILITY, Said};
 
 /// How far above 1 the probabilities out of a patch may add up, for decimals that were rounded when written down.
@@ -30,9 +30,10 @@ impl Measured {
         let [from, to, probability] = ["from", "to", "probability"].map(|name| table.column(document, name));
         let columns = [from?, to?, probability?];
         let rows: Vec<Option<Row>> = table.rows.iter().map(|row| read_row(document, &table, row, columns)).collect();
-        let rows: Vec<Row> = rows.into_iter().collect::<Option<_>>()?;
+        let all_read = rows.iter().all(Option::is_some);
+        let rows: Vec<Row> = rows.into_iter().flatten().collect();
         let faults = [repeats(&rows), overfull(&rows)].concat();
-        let sound = faults.is_empty();
+        let sound = all_read && faults.is_empty();
         for fault in faults {
             document.mistake(fault);
         }
@@ -56,7 +57,9 @@ impl Measured {
                 if position.is_none() {
                     let mistake =
                         Mistake::new(row.place.clone(), format!("{column} = {name}"), "a patch of the landscape");
-                    unknown.push(mistake.advise("write the name as the landscape has it, or take the row out"));
+                    let near =
+                        nearest_word(name, positions.keys().copied()).unwrap_or("the name as the landscape has it");
+                    unknown.push(mistake.advise(format!("write {near}, or take the row out")));
                 }
                 position
             });

@@ -26,6 +26,8 @@ impl<'a> Notes<'a> {
 
     /// Patches whose nearest target lies beyond `far_km`, three mean distances, under `shared`.
     pub(super) fn far(&mut self, patches: &[usize], far_km: f64) {
+        // Three times a mean such as 1.4 has digits that nobody wrote.
+        let far_km = (far_km * 1e6).round() / 1e6;
         let found = format!("no target within three mean distances ({far_km} km) of");
         let advice = "if that is too generous, raise path_mortality_per_km, set max_km, or use settlement = \"open\", which \
                       loses those who land nowhere";

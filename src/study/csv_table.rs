@@ -62,7 +62,14 @@ impl CsvTable {
                         table.rows.push(CsvRow { line, cells });
                     } else {
                         let expected = format!("{} cells, as the header has", table.header.len());
-                        mistakes.push(Mistake::new(table.place(line), cells.join(","), expected));
+                        let mistake = Mistake::new(table.place(line), cells.join(","), expected);
+                        mistakes.push(if cells.len() > table.header.len() {
+                            mistake.advise(
+                                "write decimals with a point, and put a text that holds a comma in quotation marks",
+                            )
+                        } else {
+                            mistake
+                        });
                     }
                 }
                 Err(error) => {
@@ -121,7 +128,8 @@ impl CsvTable {
         let cell = &row.cells[column];
         let number = cell.parse::<f64>().ok().filter(|number| numbers.admit(*number));
         if number.is_none() {
-            let found = format!("{} = {cell}", self.header[column]);
+            let name = &self.header[column];
+            let found = if cell.is_empty() { format!("{name} is empty") } else { format!("{name} = {cell}") };
             refuse(Mistake::new(self.place(row.line), found, numbers.to_string()));
         }
         number

@@ -8,6 +8,7 @@ use std::path::{Path, PathBuf};
 use sha2::{Digest, Sha256};
 use toml::de::{DeTable, DeValue};
 
+use super::faults::{is_inside, plainly};
 use super::table::{Said, Table};
 use crate::mistake::{Failure, Mistake, Mistakes, Place};
 
@@ -60,8 +61,8 @@ pub(super) enum Value {
     Faulty,
 }
 
-/// The most faults of the TOML itself that are shown.
-const FAULTS_SHOWN: usize = 8;
+/// The most lines whose faults of the TOML itself are shown.
+const FAULTS_SHOWN: usize = 20;
 
 impl Document {
     /// Reads and parses a study file. Faults of the TOML itself are kept with the other mistakes.
@@ -72,6 +73,9 @@ impl Document {
         let bytes = std::fs::read(file).map_err(|error| match error.kind() {
             std::io::ErrorKind::NotFound => Mistake::new(Place::file(file), "no such file", "a study file in TOML")
                 .advise("check the path, or write a first study with `eyot new DIR --patches FILE`")
+                .into(),
+            std::io::ErrorKind::IsADirectory => Mistake::new(Place::file(file), "a folder", "a study file in TOML")
+                .advise("name the file in it, such as study.toml")
                 .into(),
             _ => Failure::system(file, "read", error),
         })?;
@@ -103,32 +107,6 @@ impl Document {
         };
         document.note_faults(&faults);
         document
-    }
-
-    /// Notes the faults of the TOML, one a line, since one slip often makes several.
-    fn note_faults(&self, faults: &[toml::de::Error]) {
-        if !faults.is_empty() && self.text.trim_start().starts_with('{') {
-            let mistake = Mistake::new(Place::file(&self.file), "this looks like JSON", "a study file in TOML");
-            self.mistake(mistake.advise("name the study, not the file of patches"));
-            return;
-        }
-        let mut lines = BTreeSet::new();
-        for fault in faults {
-            let mut mistake = self.fault(fault);
-            let line = line_of(&mistake.place);
-            if !lines.insert(line) {
-                continue;
-            }
-            if lines.len() > FAULTS_SHOWN {
-                let more = format!("more of the like from line {line} on");
-                self.mistake(Mistake::new(mistake.place, more, "TOML"));
-                return;
-            }
-            if has_decimal_comma(self.text.lines().nth(line - 1).unwrap_or_default()) {
-                mistake = mistake.advise("write decimals with a point: 0.66, not 0,66");
-            }
-            self.mistake(mistake);
-        }
     }
 
     /// The name of the file as it was given.
@@ -164,7 +142,12 @@ impl Document {
                 Some((path, bytes))
             }
             Err(error) => {
-                let why = format!("a file that can be read; {} cannot be: {error}", path.display());
+                let path = path.display();
+                let why = match error.kind() {
+                    std::io::ErrorKind::NotFound => format!("the path of a file; there is none at {path}"),
+                    std::io::ErrorKind::IsADirectory => format!("the path of a file; {path} is a folder"),
+                    _ => format!("a file that can be read; {path} cannot be: {error}"),
+                };
                 self.mistake(said.mistake(why).advise("paths are relative to the study file"));
                 None
             }
@@ -201,7 +184,7 @@ impl Document {
     }
 
     /// Whether the TOML is at fault somewhere, so that keys may be there that the parser did not reach.
-    pub(super) fn has_faults(&self) -> bool {
+    pub fn has_faults(&self) -> bool {
         self.has_faults
     }
 
@@ -217,6 +200,25 @@ impl Document {
         if shown.len() < whole.len() { format!("{} ...", shown.trim_end()) } else { shown }
     }
 
+    /// Notes the first fault of each line, since the parser's others there mostly follow from it, and but one for all the
+    /// lines that a list or inline table swallows where it is not closed.
+    fn note_faults(&self, faults: &[toml::de::Error]) {
+        if !faults.is_empty() && self.text.trim_start().starts_with('{') {
+            let mistake = Mistake::new(Place::file(&self.file), "this looks like JSON", "a study file in TOML");
+            self.mistake(mistake.advise("name the study, not the file of patches"));
+            return;
+        }
+        let mut lines_told = BTreeSet::new();
+        let mut inside = false;
+        for fault in faults {
+            let line = self.line_starts.partition_point(|start| *start <= start_of(fault));
+            let was_inside = std::mem::replace(&mut inside, is_inside(fault.message()));
+            if lines_told.len() < FAULTS_SHOWN && lines_told.insert(line) && !(inside && was_inside) {
+                self.mistake(self.fault(fault));
+            }
+        }
+    }
+
     fn fault(&self, fault: &toml::de::Error) -> Mistake {
         let start = self.text.floor_char_boundary(start_of(fault));
         let line_start = self.text[..start].rfind('\n').map_or(0, |newline| newline + 1);
@@ -226,12 +228,8 @@ impl Document {
             nothing if nothing.is_empty() => "an empty line".to_owned(),
             words => words,
         };
-        match fault.message() {
-            "duplicate key" => {
-                Mistake::new(self.place(start), found, "each key once in its table").advise("take one of the two out")
-            }
-            message => Mistake::new(self.place(start), found, format!("TOML: {message}")),
-        }
+        let (expected, advice) = plainly(fault.message(), &self.text[line_start..line_end]);
+        Mistake { advice, ..Mistake::new(self.place(start), found, expected) }
     }
 }
 
@@ -249,16 +247,6 @@ fn place(file: &Path, text: &str, line_starts: &[usize], offset: usize) -> Place
 fn line_starts(text: &str) -> Vec<usize> {
     let first = if text.starts_with('\u{feff}') { '\u{feff}'.len_utf8() } else { 0 };
     std::iter::once(first).chain(text.match_indices('\n').map(|(at, _)| at + 1)).collect()
-}
-
-fn line_of(place: &Place) -> usize {
-    if let Place::Text { line, .. } = place { *line } else { 1 }
-}
-
-/// Whether a line has a digit on either side of a comma, outside of lists, which have such commas by right.
-fn has_decimal_comma(line: &str) -> bool {
-    let digit = |byte: u8| byte.is_ascii_digit();
-    !line.contains('[') && line.as_bytes().windows(3).any(|w| digit(w[0]) && w[1] == b',' && digit(w[2]))
 }
 
 fn sha256(bytes: &[u8]) -> String {

@@ -6,6 +6,7 @@
 
 mod csv_table;
 mod document;
+mod faults;
 mod settings;
 mod table;
 

@@ -206,9 +206,9 @@ impl<'d> Table<'d> {
             Item::Number(said) if said.value.is_infinite() => {
                 self.refuse(item, &format!("{numbers}, and not too large to hold"))
             }
-            Item::Number(said) if numbers == PROBABILITY && said.value > 1.0 && said.value <= 100.0 => {
-                let mistake = said.mistake(numbers.to_string());
-                self.document.mistake(mistake.advise("if it is a percentage, divide it by 100"));
+            Item::Number(said) if numbers == PROBABILITY && said.value > 2.0 && said.value <= 100.0 => {
+                let advice = format!("a percentage is written as a share: {}", said.value / 100.0);
+                self.document.mistake(said.mistake(numbers.to_string()).advise(advice));
                 None
             }
             other => self.refuse(other, &numbers.to_string()),

@@ -66,6 +66,6 @@ fn a_csv_table_without_the_column_says_what_it_has() {
     assert!(CsvTable::read(&document, &document.root().text("u").unwrap()).is_none());
     let found = mistakes(&document);
     assert_eq!(found[0].found, "u = 'b.csv'");
-    assert!(found[0].expected.starts_with("a file that can be read"));
+    assert!(found[0].expected.starts_with("the path of a file"));
     assert_eq!((found[1].found.as_str(), found[1].expected.as_str()), ("header patch,count", "a column Count"));
 }
