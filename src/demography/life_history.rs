@@ -2,6 +2,7 @@
 
 use std::sync::Arc;
 
+use super::allee::AlleeEffect;
 use super::density::Density;
 use super::local::{self, LocalModel};
 use super::matrix::ProjectionMatrix;
@@ -34,6 +35,8 @@ pub struct LifeHistory {
     pub matrix: ProjectionMatrix,
     /// how numbers are held near capacity
     pub density: Density,
+    /// what holds breeders back where they are few, if anything does
+    pub allee_effect: Option<AlleeEffect>,
     /// the step of a year
     pub model: Arc<dyn LocalModel>,
     /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`

@@ -1,5 +1,6 @@
 //! Vital rates, projection matrices, density dependence, and the local step of each kind of model.
 
+pub mod allee;
 pub mod density;
 mod life_history;
 pub mod local;

@@ -2,6 +2,7 @@
 
 use serde::Serialize;
 
+use super::life_words;
 use super::terminal::{Side, lines};
 use super::words::{amount, counted, grouped};
 use crate::demography::{LifeHistory, Matrix, Rate};
@@ -64,6 +65,7 @@ struct Species {
     growth_in_an_average_year: f64,
     generation_years: Option<f64>,
     density_dependence: String,
+    allee_effect: Vec<String>,
     stages: Vec<Stage>,
     elasticity_survival: f64,
     elasticity_fecundity: f64,
@@ -97,7 +99,10 @@ impl Understood {
             precision,
             landscape: Landscape::new(prepared),
             network: Network::new(prepared),
-            species: Species::new(&prepared.life_history),
+            species: Species {
+                allee_effect: life_words::allee_effect(prepared),
+                ..Species::new(&prepared.life_history)
+            },
             weather: weather(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
         }
@@ -244,6 +249,7 @@ impl Species {
             growth_in_an_average_year: matrix.growth(),
             generation_years: matrix.generation_time().filter(|_| life_history.kind != "counts"),
             density_dependence: density_in_words(life_history),
+            allee_effect: Vec::new(),
             stages,
             elasticity_survival: sum(&fates),
             elasticity_fecundity: sum(&young),
@@ -263,6 +269,12 @@ impl Species {
             rows.push(row("generation", &format!("{years:.2} years ({how})")));
         }
         rows.push(row("density dependence", &self.density_dependence));
+        rows.extend(
+            self.allee_effect
+                .iter()
+                .zip(["Allee effect", "where it leaves numbers"])
+                .map(|(text, label)| row(label, text)),
+        );
         if self.kind == "stages" {
             let (survival, fecundity) = (self.elasticity_survival, self.elasticity_fecundity);
             rows.push(row(
@@ -300,14 +312,21 @@ fn column_sum(matrix: &Matrix, column: usize) -> f64 {
 /// The rates of a stage are the survivals in order, then the fecundities; a model of counts has growth alone.
 fn rate_in_words(life_history: &LifeHistory, stage: usize, which: &str) -> String {
     let n_stages = life_history.stages.len();
-    let of = |rate: &Rate| {
-        if rate.sd > 0.0 { format!("{} ({})", short(rate.mean), short(rate.sd)) } else { short(rate.mean) }
+    let scaled = |rate: &Rate, by: f64| {
+        let (mean, sd) = (by * rate.mean, by * rate.sd);
+        if sd > 0.0 { format!("{} ({})", short(mean), short(sd)) } else { short(mean) }
     };
+    let of = |rate: &Rate| scaled(rate, 1.0);
     match (life_history.kind, which) {
         ("counts", "survival") => "-".to_owned(),
         ("counts", _) => of(&life_history.rates[0]),
         (_, "survival") => of(&life_history.rates[stage]),
-        _ => of(&life_history.rates[n_stages + stage]),
+        // With litters the rate is the share that breeds; the matrix holds the young.
+        _ => {
+            let rate = &life_history.rates[n_stages + stage];
+            let young = column_sum(&life_history.matrix.young, stage);
+            scaled(rate, if rate.mean > 0.0 { young / rate.mean } else { 1.0 })
+        }
     }
 }
 

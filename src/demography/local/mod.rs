@@ -4,6 +4,7 @@
 
 mod counts;
 mod stages;
+mod young;
 
 use std::fmt::Debug;
 

@@ -2,7 +2,8 @@
 
 use std::collections::BTreeSet;
 
-use super::{Cycle, Young};
+use super::Cycle;
+use crate::demography::local::young::Young;
 use crate::demography::{Law, Rate, RateGroup, Stage};
 use crate::study::{PROBABILITY, Said, Table};
 
@@ -15,7 +16,7 @@ struct Row {
     emigration: Option<Said<f64>>,
 }
 
-pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
+pub(super) fn read(table: &Table<'_>, young: &Young) -> Option<Cycle> {
     let rows = table.tables("stage");
     let last = rows.len().checked_sub(1)?;
     let mut names = BTreeSet::new();
@@ -36,18 +37,14 @@ pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
     Some(cycle)
 }
 
-fn read_row(mut row: Table<'_>, young: Young, last: bool, names: &mut BTreeSet<String>) -> Option<Row> {
+fn read_row(mut row: Table<'_>, young: &Young, last: bool, names: &mut BTreeSet<String>) -> Option<Row> {
     let name = read_name(&mut row, names);
     let survival = Rate::read(&row, "survival", RateGroup::Survival, Law::Beta);
     if !row.has("survival") {
         row.missing("survival", "the share alive a year later, as a number or { mean = .., sd = .. }");
     }
     let advance = read_advance(&row, last);
-    let fecundity = if row.has("fecundity") {
-        Rate::read(&row, "fecundity", RateGroup::Fecundity, law_of_young(young))
-    } else {
-        Some(Rate::fixed(row.address("fecundity"), 0.0, RateGroup::Fecundity, Law::Lognormal))
-    };
+    let fecundity = young.read_fecundity(&row);
     let (emigration, toward_capacity) = read_common(&row);
     row.finish();
     let stage = Stage {
@@ -56,14 +53,6 @@ fn read_row(mut row: Table<'_>, young: Young, last: bool, names: &mut BTreeSet<S
         toward_capacity: toward_capacity.map_or(1.0, |said| said.value),
     };
     Some(Row { stage, survival: survival?, advance, fecundity: fecundity?, emigration })
-}
-
-/// The distribution over years of a fecundity: a probability where there is at most one young.
-pub(super) fn law_of_young(young: Young) -> Law {
-    match young {
-        Young::Poisson => Law::Lognormal,
-        Young::AtMostOne => Law::Beta,
-    }
 }
 
 /// The keys that a stage row has also where a matrix stands in place of the rates.
