@@ -227,3 +227,125 @@ fn spread_between_individuals_of_counts() {
         }
     }
 }
+
+/// Both sexes of one stage each.
+fn pairs(female: f64, male: f64, fecundity: f64, harem_size: f64, density: &str) -> String {
+    format!(
+        "[life_history]\nkind = \"stages\"\nindividuals = \"both sexes\"\nharem_size = {harem_size}\n\
+         density_dependence = {{ form = \"{density}\" }}\n\
+         [[life_history.stage]]\nname = \"female\"\nsex = \"female\"\nsurvival = {female}\nfecundity = {fecundity}\n\
+         [[life_history.stage]]\nname = \"male\"\nsex = \"male\"\nsurvival = {male}\n"
+    )
+}
+
+const BOTH: [&str; 2] = ["female", "male"];
+
+/// Chain over both sexes: females survive 0.65, males 0.55, as many females breed as males allow, Poisson(0.9) young of
+/// both sexes each, half of them female, ceiling 12 on the total, from 4 + 4. A sex that is gone stays away, so that its
+/// presence is 1 - P(below one at least once). (Solved as an absorbing Markov chain, and by a second method.)
+#[test]
+fn both_sexes_under_a_ceiling() {
+    type Row = (usize, f64, f64, f64, f64, f64);
+    let cases: [(f64, [&'static str; 2], [Row; 5]); 2] = [
+        (
+            1.0,
+            ["pairs, females", "pairs, males"],
+            [
+                (1, 0.000_017, 8.322_27, 2.1810, 0.997_519, 0.993_221),
+                (5, 0.065_011, 5.582_66, 3.6548, 0.874_130, 0.763_528),
+                (10, 0.391_997, 2.874_10, 3.5774, 0.551_488, 0.414_472),
+                (20, 0.844_177, 0.668_20, 2.0685, 0.140_474, 0.097_617),
+                (50, 0.998_208, 0.007_61, 0.2315, 0.001_615, 0.001_112),
+            ],
+        ),
+        (
+            3.0,
+            ["harems, females", "harems, males"],
+            [
+                (1, 0.000_017, 8.322_27, 2.1810, 0.997_519, 0.993_221),
+                (5, 0.041_035, 7.862_17, 3.9219, 0.908_388, 0.890_375),
+                (10, 0.207_106, 6.489_72, 4.7639, 0.745_765, 0.717_982),
+                (20, 0.478_165, 4.328_60, 4.9720, 0.492_706, 0.474_257),
+                (50, 0.845_148, 1.285_84, 3.3555, 0.146_236, 0.140_834),
+            ],
+        ),
+    ];
+    for (harem_size, names, rows) in cases {
+        let case = |name| {
+            let life = pairs(0.65, 0.55, 0.9, harem_size, "ceiling");
+            Case::new(name, vec![patch(12.0, &[4, 4])], &BOTH, &life)
+        };
+        let females = case(names[0]).below_of(1, "female").run(50);
+        let males = case(names[1]).below_of(1, "male").run(50);
+        for (census, extinct, mean, sd, any_female, any_male) in rows {
+            females.extinct(census, extinct);
+            females.total(census, mean, sd);
+            females.quasi_extinct(census as u32, 1.0 - any_female);
+            males.quasi_extinct(census as u32, 1.0 - any_male);
+        }
+    }
+}
+
+/// With males that never die and a harem without end, the females alone are the branching process of survival 0.6 and
+/// Poisson 0.5 female young: the same values as for one stage of females (Harris 1963, from memory; generating functions).
+#[test]
+fn males_without_end_leave_the_female_model() {
+    let case = Case::new("males without end", vec![patch(ROOMY, &[1, 1])], &BOTH, &pairs(0.6, 1.0, 1.0, 1e9, "none"));
+    let seen = case.below_of(1, "female").run(20);
+    for (census, null) in [(5, 0.555_135_0), (10, 0.661_513_7), (20, 0.724_448_9)] {
+        seen.quasi_extinct(census, null);
+    }
+}
+
+/// Who breeds is drawn over the stages of females: of 6 with 2 young each and 4 with 0.5, 5 males mate with 5. K of the
+/// first stage is hypergeometric, of mean 3 and variance 5 (0.6) (0.4) (5/9) = 2/3; given K young are Poisson with mean
+/// 2.5 + 1.5 K. A female without fecundity takes no male, a male that does not mate takes no female.
+#[test]
+fn who_breeds_is_drawn_at_random() {
+    let life = |harem_size: f64, survival: f64| {
+        format!(
+            "[life_history]\nkind = \"stages\"\nindividuals = \"both sexes\"\nharem_size = {harem_size}\n\
+             density_dependence = {{ form = \"none\" }}\n\
+             [[life_history.stage]]\nname = \"chick\"\nsex = \"female\"\nsurvival = 0\n\
+             [[life_history.stage]]\nname = \"cock\"\nsex = \"male\"\nsurvival = 0\nmates = true\n\
+             [[life_history.stage]]\nname = \"hen\"\nsex = \"female\"\nsurvival = {survival}\nfecundity = 2\n\
+             [[life_history.stage]]\nname = \"old cock\"\nsex = \"male\"\nsurvival = 0\n\
+             [[life_history.stage]]\nname = \"old hen\"\nsex = \"female\"\nsurvival = 0\nfecundity = 0.5\n"
+        )
+    };
+    let stages = ["chick", "cock", "hen", "old cock", "old hen"];
+    let start = vec![patch(ROOMY, &[7, 5, 6, 30, 4])];
+    let case = Case::new("who breeds", start.clone(), &stages, &life(1.0, 0.0));
+    case.run(1).total(1, 7.0, f64::sqrt(7.0 + 2.25 * 2.0 / 3.0));
+    // Half a female to a male: 2.5, so 2 of the 10 breed; K has mean 1.2 and variance 2 (0.6) (0.4) (8/9).
+    let case = Case::new("half a female to a male", start, &stages, &life(0.5, 1.0));
+    let variance = 2.8 + 2.25 * 0.48 * 8.0 / 9.0;
+    let seen = case.below_of(4, "old hen").run(1);
+    seen.total(1, 6.0 + 2.8, f64::sqrt(variance));
+    // Hens advance to the next row of their own sex: 6 of them stand where 4 died.
+    seen.quasi_extinct(1, 0.0);
+}
+
+/// Females survive 0.6 and males 0.5; 1.6 young of both sexes, half female: females grow by 1.4, the multiplier of
+/// fecundity at capacity is (1 - 0.6)/0.8 = 1/2, and of stable numbers there are 0.8/(1.4 - 0.5) males to a female.
+#[test]
+fn the_females_lead() {
+    let case =
+        Case::new("females lead", vec![patch(50.0, &[9, 9])], &BOTH, &pairs(0.6, 0.5, 1.6, 1.0, "beverton-holt"));
+    let life_history = case.prepare(1).life_history;
+    let near = |value: f64, expected: f64| assert!((value - expected).abs() < 1e-9, "{value} is not {expected}");
+    near(life_history.matrix.growth(), 1.4);
+    near(life_history.density.at_capacity.unwrap(), 0.5);
+    let stable = life_history.matrix.stable_distribution();
+    near(stable[1] / stable[0], 0.8 / 0.9);
+    assert_eq!(life_history.matrix.reproductive_values(), [1.0, 0.0]);
+    assert_eq!(life_history.individuals, "females and males");
+    // Mean age of mothers: the growth over the part of it that is births.
+    near(life_history.matrix.generation_time().unwrap(), 1.4 / 0.8);
+    // Males that outlast the females settle nowhere, and are taken as many as are born.
+    let case = Case::new("males outlast", vec![patch(50.0, &[9, 9])], &BOTH, &pairs(0.4, 0.9, 0.5, 1.0, "ceiling"));
+    let matrix = case.prepare(1).life_history.matrix;
+    assert!(!matrix.settles());
+    near(matrix.growth(), 0.65);
+    near(matrix.stable_distribution()[0], 0.5);
+}

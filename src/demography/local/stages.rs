@@ -4,6 +4,7 @@
 //! enter the first stage.
 
 mod matrix_form;
+mod sexes;
 mod table_form;
 
 use std::sync::Arc;
@@ -89,7 +90,14 @@ fn survive(
 
 /// Reads the life cycle, as rows or as a whole matrix, and what stands beside it.
 pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
-    let individuals = table.choice("individuals", &[("females", "females"), ("individuals", "individuals")]);
+    let choices = [("females", "females"), ("individuals", "individuals"), (sexes::INDIVIDUALS, sexes::INDIVIDUALS)];
+    let individuals = table.choice("individuals", &choices);
+    if individuals.as_ref().is_some_and(|said| said.value == sexes::INDIVIDUALS) {
+        return sexes::read(table);
+    }
+    for key in ["female_share", "harem_size"].into_iter().filter(|key| table.has(key)) {
+        table.mistake(table.address(key), "no such key unless individuals = \"both sexes\"");
+    }
     let young = Young::read(table);
     let as_read = young.clone().unwrap_or(Young::Poisson);
     let cycle = match (table.has("stage"), table.has("matrix")) {

@@ -16,17 +16,40 @@ struct Row {
     emigration: Option<Said<f64>>,
 }
 
+/// Reads the rows of a life cycle whose stages follow each other as they stand.
 pub(super) fn read(table: &Table<'_>, young: &Young) -> Option<Cycle> {
     let rows = table.tables("stage");
-    let last = rows.len().checked_sub(1)?;
+    let next: Vec<Option<usize>> = (1..=rows.len()).map(|next| (next < rows.len()).then_some(next)).collect();
+    read_rows(rows, &next, young, &mut |row, _| {
+        for key in ["sex", "mates"].into_iter().filter(|key| row.has(key)) {
+            row.mistake(row.address(key), "no such key unless individuals = \"both sexes\"");
+        }
+    })
+}
+
+/// Reads rows of which each is followed by the row `next` says, if any. `read_more` reads the keys of a row that not every
+/// life cycle has; it is told the row's position.
+pub(super) fn read_rows(
+    rows: Vec<Table<'_>>,
+    next: &[Option<usize>],
+    young: &Young,
+    read_more: &mut dyn FnMut(&Table<'_>, usize),
+) -> Option<Cycle> {
     let mut names = BTreeSet::new();
     let rows: Vec<Option<Row>> = rows
         .into_iter()
         .enumerate()
-        .map(|(position, row)| read_row(row, young, position == last, &mut names))
+        .map(|(position, mut row)| {
+            let name = read_name(&mut row, &mut names);
+            read_more(&row, position);
+            read_row(row, name, young, next[position].is_none())
+        })
         .collect();
+    if rows.is_empty() {
+        return None;
+    }
     let rows: Vec<Row> = rows.into_iter().collect::<Option<_>>()?;
-    let fate_shares = (0..rows.len()).map(|from| shares(&rows, from)).collect();
+    let fate_shares = (0..rows.len()).map(|from| shares(&rows, from, next[from])).collect();
     let emigration_said = rows.iter().find_map(|row| row.emigration.clone().filter(|said| said.value > 0.0));
     let mut cycle = Cycle { stages: vec![], survival: vec![], fate_shares, fecundity: vec![], emigration_said };
     for row in rows {
@@ -37,8 +60,7 @@ pub(super) fn read(table: &Table<'_>, young: &Young) -> Option<Cycle> {
     Some(cycle)
 }
 
-fn read_row(mut row: Table<'_>, young: &Young, last: bool, names: &mut BTreeSet<String>) -> Option<Row> {
-    let name = read_name(&mut row, names);
+fn read_row(row: Table<'_>, name: Option<String>, young: &Young, last: bool) -> Option<Row> {
     let survival = Rate::read(&row, "survival", RateGroup::Survival, Law::Beta);
     if !row.has("survival") {
         row.missing("survival", "the share alive a year later, as a number or { mean = .., sd = .. }");
@@ -90,16 +112,13 @@ fn read_advance(row: &Table<'_>, last: bool) -> Option<Said<f64>> {
 }
 
 /// The shares of a stage's survivors that are found in each stage a year later.
-fn shares(rows: &[Row], from: usize) -> Vec<f64> {
+fn shares(rows: &[Row], from: usize, next: Option<usize>) -> Vec<f64> {
     let mut shares = vec![0.0; rows.len()];
-    let advance = match &rows[from].advance {
-        Some(said) => said.value,
-        None if from + 1 < rows.len() => 1.0,
-        None => 0.0,
-    };
+    let unless_said = if next.is_some() { 1.0 } else { 0.0 };
+    let advance = rows[from].advance.as_ref().map_or(unless_said, |said| said.value);
     shares[from] = 1.0 - advance;
-    if from + 1 < rows.len() {
-        shares[from + 1] = advance;
+    if let Some(next) = next {
+        shares[next] = advance;
     }
     shares
 }
