@@ -3,9 +3,11 @@
 use std::sync::Arc;
 
 use super::allee::AlleeEffect;
+use super::census::Census;
 use super::density::Density;
 use super::local::{self, LocalModel};
 use super::matrix::ProjectionMatrix;
+use super::oddities;
 use super::rate::Rate;
 use crate::study::{Said, Table};
 
@@ -37,6 +39,8 @@ pub struct LifeHistory {
     pub density: Density,
     /// what holds breeders back where they are few, if anything does
     pub allee_effect: Option<AlleeEffect>,
+    /// when in the year individuals are counted, if the study says
+    pub census: Option<Census>,
     /// the step of a year
     pub model: Arc<dyn LocalModel>,
     /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`
@@ -55,6 +59,9 @@ impl LifeHistory {
             return None;
         };
         let life_history = (kind.value)(&table);
+        if let Some(life_history) = &life_history {
+            oddities::warn(&table, life_history);
+        }
         table.finish();
         life_history
     }

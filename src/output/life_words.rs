@@ -1,8 +1,8 @@
 //! The life history in words: what an Allee effect does to the patches, and what a year does to an individual.
 
 use super::words::{amount, grouped};
-use crate::demography::LifeHistory;
 use crate::demography::allee::{Balance, balance};
+use crate::demography::{LifeHistory, Matrix};
 use crate::engine::Prepared;
 use crate::landscape::Patch;
 
@@ -47,4 +47,46 @@ fn balance_in_words(life_history: &LifeHistory, patches: &[Patch]) -> String {
         _ => format!("; in {} patches, too small for it, they fall from any number", grouped(too_small)),
     };
     format!("one closed patch, average years, no chance: {what}{others}")
+}
+
+/// What an average year does to a hundred individuals of each stage, without crowding: a sentence a stage.
+pub(super) fn of_a_hundred(life_history: &LifeHistory) -> Vec<String> {
+    (0..life_history.stages.len()).map(|stage| of_a_hundred_in(life_history, stage)).collect()
+}
+
+fn of_a_hundred_in(life_history: &LifeHistory, from: usize) -> String {
+    let matrix = &life_history.matrix;
+    let entries = |part: &Matrix| -> Vec<(usize, f64)> {
+        (0..part.size()).map(|to| (to, part[(to, from)])).filter(|(_, entry)| *entry > 0.0).collect()
+    };
+    let listed = |entries: &[(usize, f64)], before: &str| {
+        let parts: Vec<String> = entries
+            .iter()
+            .map(|(to, entry)| format!("{} {before}{}", of_100(*entry), life_history.stages[*to].name))
+            .collect();
+        parts.join(" and ")
+    };
+    let name = &life_history.stages[from].name;
+    let alive = match entries(&matrix.fates).as_slice() {
+        [] => "none is alive".to_owned(),
+        [(to, entry)] if *to == from => format!("{} are alive", of_100(*entry)),
+        several => format!("{} are alive", listed(several, "as ")),
+    };
+    let young = entries(&matrix.young);
+    let mated = if matrix.leading.is_some() { ", all mated," } else { "" };
+    let born = if young.is_empty() {
+        String::new()
+    } else {
+        format!("; by their young{mated} there are {} more", listed(&young, ""))
+    };
+    format!("of 100 {name}, {alive} a year later{born}")
+}
+
+/// A hundred times a number, as finely as it is small.
+fn of_100(number: f64) -> String {
+    match 100.0 * number {
+        many if many >= 9.95 => format!("{many:.0}"),
+        some if some >= 0.995 => format!("{some:.1}"),
+        few => format!("{few:.2}"),
+    }
 }

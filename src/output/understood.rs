@@ -5,7 +5,7 @@ use serde::Serialize;
 use super::life_words;
 use super::terminal::{Side, lines};
 use super::words::{amount, counted, grouped};
-use crate::demography::{LifeHistory, Matrix, Rate};
+use crate::demography::{Census, LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
 use crate::environment::Correlation;
 use crate::landscape::Crs;
@@ -66,6 +66,8 @@ struct Species {
     generation_years: Option<f64>,
     density_dependence: String,
     allee_effect: Vec<String>,
+    census: Option<&'static str>,
+    average_year: Vec<String>,
     stages: Vec<Stage>,
     elasticity_survival: f64,
     elasticity_fecundity: f64,
@@ -250,6 +252,12 @@ impl Species {
             generation_years: matrix.generation_time().filter(|_| life_history.kind != "counts"),
             density_dependence: density_in_words(life_history),
             allee_effect: Vec::new(),
+            census: life_history.census.map(Census::fecundity_in_words),
+            average_year: if life_history.kind == "stages" {
+                life_words::of_a_hundred(life_history)
+            } else {
+                Vec::new()
+            },
             stages,
             elasticity_survival: sum(&fates),
             elasticity_fecundity: sum(&young),
@@ -274,6 +282,13 @@ impl Species {
                 .iter()
                 .zip(["Allee effect", "where it leaves numbers"])
                 .map(|(text, label)| row(label, text)),
+        );
+        rows.extend(self.census.map(|text| row("census", text)));
+        rows.extend(
+            self.average_year
+                .iter()
+                .enumerate()
+                .map(|(position, text)| row(if position == 0 { "a year, without crowding" } else { "" }, text)),
         );
         if self.kind == "stages" {
             let (survival, fecundity) = (self.elasticity_survival, self.elasticity_fecundity);

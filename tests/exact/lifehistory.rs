@@ -1,6 +1,9 @@
 //! The Allee effect, litters, spread between individuals, and both sexes.
 
 use eyot::demography::allee::{Balance, balance};
+use std::path::Path;
+
+use eyot::engine::{Overrides, prepare};
 use eyot::num;
 
 use crate::support::{Case, Seen, patch};
@@ -348,4 +351,21 @@ fn the_females_lead() {
     assert!(!matrix.settles());
     near(matrix.growth(), 0.65);
     near(matrix.stable_distribution()[0], 0.5);
+}
+
+/// The example of both sexes: it reads without a mistake or a warning, and is laid out as its page says.
+#[test]
+fn the_example_of_both_sexes_is_sound() {
+    let file = Path::new(env!("CARGO_MANIFEST_DIR")).join("examples/orrisay/study.toml");
+    let checked = prepare(&file, Overrides::default()).unwrap_or_else(|failure| panic!("{failure}"));
+    assert_eq!(checked.warnings, []);
+    let patches = &checked.value.landscape.patches;
+    assert_eq!(patches.len(), 16);
+    assert_eq!(patches.iter().filter(|patch| patch.area_ha < 1.0).count(), 6);
+    let total: f64 = patches.iter().map(|patch| patch.area_ha).sum();
+    assert!((total - 36.0).abs() < 0.5, "{total}");
+    // Both answers that an Allee effect has are there.
+    let balances: Vec<_> = patches.iter().map(|patch| balance(&checked.value.life_history, patch.capacity)).collect();
+    assert!(balances.contains(&Some(Balance::Never)));
+    assert!(balances.iter().any(|balance| matches!(balance, Some(Balance::Between { settles: Some(_), .. }))));
 }

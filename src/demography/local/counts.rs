@@ -70,6 +70,7 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         density,
         model: allee::under(allee_effect.as_ref(), Arc::new(Counts { excess })),
         allee_effect,
+        census: None,
         emigration_said: emigration.filter(|said| said.value > 0.0),
     })
 }

@@ -13,7 +13,7 @@ use super::young::Young;
 use super::{LocalModel, Pressure, add};
 use crate::demography::allee::{self, AlleeEffect};
 use crate::demography::density::Density;
-use crate::demography::{LifeHistory, ProjectionMatrix, Rate, Stage};
+use crate::demography::{Census, LifeHistory, ProjectionMatrix, Rate, Stage};
 use crate::mistake::Mistake;
 use crate::random::{PlaceKey, Purpose, binomial};
 use crate::study::{Said, Table};
@@ -98,6 +98,7 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
     for key in ["female_share", "harem_size"].into_iter().filter(|key| table.has(key)) {
         table.mistake(table.address(key), "no such key unless individuals = \"both sexes\"");
     }
+    let census = Census::read(table);
     let young = Young::read(table);
     let as_read = young.clone().unwrap_or(Young::Poisson);
     let cycle = match (table.has("stage"), table.has("matrix")) {
@@ -126,6 +127,7 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         density,
         model: allee::under(allee_effect.as_ref(), Arc::new(Stages { fates, young: young? })),
         allee_effect,
+        census,
         emigration_said: cycle.emigration_said,
     })
 }

@@ -169,7 +169,7 @@ impl Litter {
             table.missing(KEY, "a list of the chances of 0, 1, 2, ... young in a litter");
         }
         let chances = table.numbers(KEY, PROBABILITY)?;
-        let sum: f64 = chances.value.iter().sum();
+        let sum = chances.value.iter().fold(0.0, |sum, chance| sum + chance);
         if (sum - 1.0).abs() > 1e-9 {
             let expected = format!("the chances of 0, 1, 2, ... young, which sum to 1, not to {sum}");
             table.document().mistake(chances.mistake(expected));

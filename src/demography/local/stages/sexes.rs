@@ -12,7 +12,7 @@ use crate::demography::allee::{self, AlleeEffect};
 use crate::demography::density::Density;
 use crate::demography::local::young::Young;
 use crate::demography::local::{LocalModel, Pressure, add};
-use crate::demography::{LifeHistory, ProjectionMatrix};
+use crate::demography::{Census, LifeHistory, ProjectionMatrix};
 use crate::mistake::Mistake;
 use crate::random::{PlaceKey, Purpose, binomial, remove_at_random};
 use crate::study::{Item, Numbers, POSITIVE, Said, Table};
@@ -94,6 +94,7 @@ impl BothSexes {
 
 /// Reads the rows of both sexes, and what stands beside them.
 pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
+    let census = Census::read(table);
     refuse_matrix(table);
     let young = Young::read(table);
     let female_share = number_or(table, "female_share", PART, 0.5);
@@ -135,6 +136,7 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         density,
         model: allee::under(allee_effect.as_ref(), Arc::new(model)),
         allee_effect,
+        census,
         emigration_said: cycle.emigration_said,
     })
 }
