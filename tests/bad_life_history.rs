@@ -125,7 +125,8 @@ fn litters() {
         format!("kind = \"stages\"\ndensity_dependence = {{ form = \"none\" }}\n{litter}\nmatrix = [[1.4]]\n{keys}\n")
     };
     assert_refused(&matrix(""), &["life_history.matrix", "life_history.stage 1.fecundity", "at most 1.3"]);
-    let words = ["life_history.stage 1.fecundity.sd = 0.9", "below 0.65"];
+    // Half of the entry are fates, so that the share of 0.7/1.3 breeds: 1.3 sqrt(p (1 - p)) is 0.648.
+    let words = ["life_history.stage 1.fecundity.sd = 0.9", "below 0.648", "a share of 0.5385 breeds"];
     assert_refused(&matrix("first_row_fates = [0.5]\nfecundity_sd = [0.9]"), &words);
 }
 

@@ -87,8 +87,8 @@ mod tests {
             assert!(largest > 2.0 && largest < 5.5, "{shape}: {largest}");
         }
         let mut stream = ReplicateKey::new(33, 2).year(0).network().draw(Purpose::Heterogeneity);
-        assert_eq!(gamma(&mut stream, f64::INFINITY), f64::INFINITY);
-        assert_eq!([0.0, -1.0, f64::NAN].map(|shape| gamma(&mut stream, shape)), [0.0; 3]);
+        assert!(gamma(&mut stream, f64::INFINITY) > f64::MAX);
+        assert!([0.0, -1.0, f64::NAN].iter().all(|shape| gamma(&mut stream, *shape).abs() <= 0.0));
         assert!(gamma(&mut stream, 1e-300) >= 0.0);
     }
 }

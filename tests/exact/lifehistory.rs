@@ -139,8 +139,8 @@ fn litter_at(x: f64) -> f64 {
 }
 
 /// Mean of size to the power `power`.
-fn litter_moment(power: i32) -> f64 {
-    LITTER.iter().enumerate().map(|(size, chance)| chance * (size as f64).powi(power)).sum()
+fn litter_moment(power: f64) -> f64 {
+    LITTER.iter().enumerate().map(|(size, chance)| chance * num::pow(size as f64, power)).sum()
 }
 
 /// A two-type branching process (Harris 1963, The Theory of Branching Processes; Caswell 2001, Matrix Population Models,
@@ -174,8 +174,8 @@ fn mean_and_variance_of_a_step_with_litters() {
     let (n, survival, share) = (20.0, 0.6, 0.5);
     let life = "[life_history]\nkind = \"stages\"\ndensity_dependence = { form = \"none\" }\n\
         young = { litter = [0.1, 0.3, 0.4, 0.2] }\nmatrix = [[1.45]]\nfirst_row_fates = [0.41379310344827586]\n";
-    let young = share * litter_moment(1);
-    let variance = survival * (1.0 - survival) + share * litter_moment(2) - young * young;
+    let young = share * litter_moment(1.0);
+    let variance = survival * (1.0 - survival) + share * litter_moment(2.0) - young * young;
     let seen = Case::new("step with litters", vec![patch(ROOMY, &[20])], &["stage 1"], life).run(1);
     seen.total(1, n * (survival + young), f64::sqrt(n * variance));
 }
@@ -199,7 +199,7 @@ fn weather_on_the_share_that_breeds() {
     let none = 1.0 - 4.0 * 0.9 * moments[0] + 6.0 * 0.81 * moments[1] - 4.0 * 0.729 * moments[2] + 0.6561 * moments[3];
     let seen = Case::new("weather on breeding", vec![patch(ROOMY, &[4])], &["all"], life).run(1);
     seen.extinct(1, none);
-    let (size, square) = (litter_moment(1), litter_moment(2));
+    let (size, square) = (litter_moment(1.0), litter_moment(2.0));
     let within = n * (square * moments[0] - size * size * moments[1]);
     seen.total(1, n * 0.85, f64::sqrt(within + n * n * 0.595 * 0.595));
 }

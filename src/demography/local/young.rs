@@ -109,6 +109,7 @@ impl Young {
         let most = largest_sd(share) * litter.mean;
         (sd.value > 0.0 && sd.value >= most).then(|| {
             let most = (most * 1000.0).floor() / 1000.0;
+            let share = (share * 10_000.0).round() / 10_000.0;
             let expected = format!(
                 "below {most}: with litters of {} on average a share of {share} breeds, which can vary no more",
                 litter.mean

@@ -67,7 +67,8 @@ impl LocalModel for BothSexes {
 
     fn young_in_words(&self) -> String {
         let harem = self.harem_size;
-        let to_each = if harem <= 1.0 && harem >= 1.0 { "one female".to_owned() } else { format!("{harem} females") };
+        let to_each =
+            if (harem - 1.0).abs() < f64::EPSILON { "one female".to_owned() } else { format!("{harem} females") };
         format!(
             "{}; {} of the young are females; {to_each} to a male that mates, at most",
             self.young.in_words(),
