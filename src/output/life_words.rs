@@ -70,7 +70,7 @@ fn of_a_hundred_in(life_history: &LifeHistory, from: usize) -> String {
     let alive = match entries(&matrix.fates).as_slice() {
         [] => "none is alive".to_owned(),
         [(to, entry)] if *to == from => format!("{} are alive", of_100(*entry)),
-        several => format!("{} are alive", listed(several, "as ")),
+        several => format!("alive are {}", listed(several, "as ")),
     };
     let young = entries(&matrix.young);
     let mated = if matrix.leading.is_some() { ", all mated," } else { "" };
@@ -79,7 +79,7 @@ fn of_a_hundred_in(life_history: &LifeHistory, from: usize) -> String {
     } else {
         format!("; by their young{mated} there are {} more", listed(&young, ""))
     };
-    format!("of 100 {name}, {alive} a year later{born}")
+    format!("of 100 {name}, a year later {alive}{born}")
 }
 
 /// A hundred times a number, as finely as it is small.
