@@ -12,7 +12,7 @@ use stats_alloc::{INSTRUMENTED_SYSTEM, Region, StatsAlloc};
 static ALLOCATOR: &StatsAlloc<System> = &INSTRUMENTED_SYSTEM;
 
 /// Every feature of the loop at once: stages, correlated weather, dispersal, density dependence, a ceiling elsewhere.
-fn study(horizon: u32, density: &str) -> Prepared {
+fn study(horizon: u32, life_history: &str) -> Prepared {
     let folder = tempfile::tempdir().expect("a temporary folder can be made");
     let features: Vec<String> = (0..12)
         .map(|i| {
@@ -41,18 +41,7 @@ fn study(horizon: u32, density: &str) -> Prepared {
         area = {{ property = "area" }}
         capacity = {{ property = "k" }}
         start = {{ share_of_capacity = 0.8 }}
-        [life_history]
-        kind = "stages"
-        density_dependence = {{ form = "{density}" }}
-        [[life_history.stage]]
-        name = "juvenile"
-        survival = {{ mean = 0.5, sd = 0.1 }}
-        emigration = 0.3
-        [[life_history.stage]]
-        name = "adult"
-        survival = {{ mean = 0.7, sd = 0.1 }}
-        fecundity = {{ mean = 0.9, sd = 0.3 }}
-        emigration = 0.05
+        {life_history}
         [environment]
         correlation = {{ reach_km = 3, nugget = 0.1 }}
         autocorrelation = 0.2
@@ -92,13 +81,58 @@ fn full_or_empty(horizon: u32) -> Prepared {
     }
 }
 
+const FEMALES: &str = r#"
+        [life_history]
+        kind = "stages"
+        density_dependence = { form = "FORM" }
+        [[life_history.stage]]
+        name = "juvenile"
+        survival = { mean = 0.5, sd = 0.1 }
+        emigration = 0.3
+        [[life_history.stage]]
+        name = "adult"
+        survival = { mean = 0.7, sd = 0.1 }
+        fecundity = { mean = 0.9, sd = 0.3 }
+        emigration = 0.05
+"#;
+
+/// Pairs with litters, under an Allee effect.
+const PAIRS: &str = r#"
+        [life_history]
+        kind = "stages"
+        individuals = "both sexes"
+        young = { litter = [0.2, 0.3, 0.5] }
+        allee_effect = { half_at = 1 }
+        density_dependence = { form = "beverton-holt" }
+        [[life_history.stage]]
+        name = "female"
+        sex = "female"
+        survival = { mean = 0.7, sd = 0.1 }
+        fecundity = { mean = 1.0, sd = 0.2 }
+        emigration = 0.1
+        [[life_history.stage]]
+        name = "male"
+        sex = "male"
+        survival = { mean = 0.6, sd = 0.1 }
+        emigration = 0.1
+"#;
+
+/// Individuals that differ widely.
+const COUNTS: &str = r#"
+        [life_history]
+        kind = "counts"
+        growth = { mean = 1.2, sd = 0.2 }
+        offspring_variance = 3
+        emigration = 0.1
+        density_dependence = { form = "ricker" }
+"#;
+
 #[test]
 fn years_cost_no_allocation() {
-    let pairs = [
-        (study(5, "ceiling"), study(300, "ceiling")),
-        (study(5, "ricker"), study(300, "ricker")),
-        (full_or_empty(5), full_or_empty(300)),
-    ];
+    let females = |form: &str| FEMALES.replace("FORM", form);
+    let histories = [females("ceiling"), females("ricker"), PAIRS.to_owned(), COUNTS.to_owned()];
+    let mut pairs: Vec<_> = histories.iter().map(|history| (study(5, history), study(300, history))).collect();
+    pairs.push((full_or_empty(5), full_or_empty(300)));
     for (short, long) in pairs {
         // A first run pays for what is made once in the life of the process.
         allocations(&short);

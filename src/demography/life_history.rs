@@ -2,9 +2,12 @@
 
 use std::sync::Arc;
 
+use super::allee::AlleeEffect;
+use super::census::Census;
 use super::density::Density;
 use super::local::{self, LocalModel, Occupancy};
 use super::matrix::ProjectionMatrix;
+use super::oddities;
 use super::rate::Rate;
 use crate::study::{Said, Table};
 
@@ -34,6 +37,10 @@ pub struct LifeHistory {
     pub matrix: ProjectionMatrix,
     /// how numbers are held near capacity
     pub density: Density,
+    /// what holds breeders back where they are few, if anything does
+    pub allee_effect: Option<AlleeEffect>,
+    /// when in the year individuals are counted, if the study says
+    pub census: Option<Census>,
     /// the step of a year
     pub model: Arc<dyn LocalModel>,
     /// the first emigration above 0 that the study states, to point at where it has no `[dispersal]`
@@ -54,6 +61,9 @@ impl LifeHistory {
             return None;
         };
         let life_history = (kind.value)(&table);
+        if let Some(life_history) = &life_history {
+            oddities::warn(&table, life_history);
+        }
         table.finish();
         life_history
     }

@@ -38,6 +38,32 @@ impl Matrix {
         (0..self.size).map(|row| (0..self.size).map(|column| self[(row, column)] * vector[column]).sum()).collect()
     }
 
+    /// The rows and columns of these stages alone.
+    fn among(&self, stages: &[usize]) -> Self {
+        let mut part = Self::zero(stages.len());
+        for (row, to) in stages.iter().enumerate() {
+            for (column, from) in stages.iter().enumerate() {
+                part[(row, column)] = self[(*to, *from)];
+            }
+        }
+        part
+    }
+
+    /// b/g + M b/g^2 + M^2 b/g^3 + ..., for a matrix whose dominant eigenvalue is below `g`: the sum over ages where `b`
+    /// are born to a population that grows by `g` a year.
+    fn discounted_sum(&self, b: &[f64], g: f64) -> Vec<f64> {
+        let mut power = self.clone();
+        power.cells.iter_mut().for_each(|cell| *cell /= g);
+        let mut sum: Vec<f64> = b.iter().map(|born| born / g).collect();
+        // (1 + T)(1 + T^2)(1 + T^4)... holds every power of T once.
+        for _ in 0..64 {
+            let more = power.times(&sum);
+            sum.iter_mut().zip(more).for_each(|(sum, more)| *sum += more);
+            power = power.squared();
+        }
+        sum
+    }
+
     fn transposed(&self) -> Self {
         let mut result = Self::zero(self.size);
         for row in 0..self.size {
@@ -100,12 +126,34 @@ pub struct ProjectionMatrix {
     pub fates: Matrix,
     /// `young[(to, from)]`: mean young alive in stage `to` a year later, per individual
     pub young: Matrix,
+    /// the stages that alone decide on growth (the females, of both sexes), in order; `None` where all do. No other stage
+    /// has young, and none becomes one of these.
+    pub leading: Option<Vec<usize>>,
 }
 
 impl ProjectionMatrix {
     /// No stage survives or breeds.
     pub fn zero(stages: usize) -> Self {
-        Self { fates: Matrix::zero(stages), young: Matrix::zero(stages) }
+        Self { fates: Matrix::zero(stages), young: Matrix::zero(stages), leading: None }
+    }
+
+    /// The part that decides on growth: the leading stages alone.
+    #[must_use]
+    pub fn leading_part(&self) -> Self {
+        match &self.leading {
+            None => self.clone(),
+            Some(stages) => Self { fates: self.fates.among(stages), young: self.young.among(stages), leading: None },
+        }
+    }
+
+    /// The same with its two parts multiplied by `on_fates` and `on_young`.
+    #[must_use]
+    pub fn acted_on(&self, on_fates: f64, on_young: f64) -> Self {
+        let times = |part: &Matrix, by: f64| Matrix {
+            size: part.size,
+            cells: part.cells.iter().map(|cell| by * cell).collect(),
+        };
+        Self { fates: times(&self.fates, on_fates), young: times(&self.young, on_young), leading: self.leading.clone() }
     }
 
     /// The whole matrix, with the two parts multiplied by `on_fates` and `on_young`.
@@ -124,26 +172,69 @@ impl ProjectionMatrix {
 
     /// Growth a year in the long run in an average year at low numbers: the dominant eigenvalue.
     pub fn growth(&self) -> f64 {
-        self.whole().dominant().0
+        self.leading_part().whole().dominant().0
     }
 
     /// Share of each stage once the proportions have settled; sums to 1.
+    ///
+    /// Stages that do not lead settle beside those that do. Where they last longer than the leading ones are replaced, no
+    /// proportions settle: their numbers are then taken in the ratio in which the two are born, in the
+    /// proportions among themselves that would settle without births.
     pub fn stable_distribution(&self) -> Vec<f64> {
-        self.whole().dominant().1
+        let Some(leading) = &self.leading else { return self.whole().dominant().1 };
+        let (growth, lead) = self.leading_part().whole().dominant();
+        let followers: Vec<usize> = (0..self.fates.size).filter(|stage| !leading.contains(stage)).collect();
+        let mut shares = vec![0.0; self.fates.size];
+        for (stage, share) in leading.iter().zip(&lead) {
+            shares[*stage] = *share;
+        }
+        let born = self.young.times(&shares);
+        let born: Vec<f64> = followers.iter().map(|stage| born[*stage]).collect();
+        let beside = if self.settles() {
+            self.fates.among(&followers).discounted_sum(&born, growth)
+        } else {
+            let to_leading = leading.iter().map(|stage| self.young.times(&shares)[*stage]).sum::<f64>();
+            let ratio = if to_leading > 0.0 { born.iter().sum::<f64>() / to_leading } else { 1.0 };
+            self.fates.among(&followers).dominant().1.iter().map(|share| share * ratio).collect()
+        };
+        for (stage, share) in followers.iter().zip(beside) {
+            shares[*stage] = share;
+        }
+        normalised(shares)
     }
 
-    /// What an individual of each stage is worth for future numbers, the first stage being worth 1 (all left as they are
-    /// where the first is worth nothing). Fisher 1930.
+    /// Whether the proportions of the stages settle: not so where stages that do not lead (males) last longer than the
+    /// leading ones are replaced.
+    pub fn settles(&self) -> bool {
+        let Some(leading) = &self.leading else { return true };
+        let followers: Vec<usize> = (0..self.fates.size).filter(|stage| !leading.contains(stage)).collect();
+        self.fates.among(&followers).dominant().0 < self.growth()
+    }
+
+    /// What an individual of each stage is worth for future numbers, the first stage that leads being worth 1 (all left as
+    /// they are where it is worth nothing); those that do not lead are worth nothing. Fisher 1930.
     pub fn reproductive_values(&self) -> Vec<f64> {
-        let values = self.whole().transposed().dominant().1;
+        let values = self.leading_part().whole().transposed().dominant().1;
         let first = values[0];
-        if first > 0.0 { values.iter().map(|value| value / first).collect() } else { values }
+        let scale = if first > 0.0 { first } else { 1.0 };
+        self.spread(&values.iter().map(|value| value / scale).collect::<Vec<_>>())
+    }
+
+    /// Values of the leading stages put in the places of all stages, 0 in the others.
+    fn spread(&self, values: &[f64]) -> Vec<f64> {
+        let Some(leading) = &self.leading else { return values.to_vec() };
+        let mut all = vec![0.0; self.fates.size];
+        for (stage, value) in leading.iter().zip(values) {
+            all[*stage] = *value;
+        }
+        all
     }
 
     /// Elasticities of the growth rate to the entries of the two parts, `(fates, young)`; all together sum to 1.
     /// de Kroon, Plaisier, van Groenendael & Caswell 1986, Ecology 67.
     pub fn elasticities(&self) -> (Matrix, Matrix) {
-        let (growth, stable) = self.whole().dominant();
+        let (growth, stable) = self.leading_part().whole().dominant();
+        let stable = self.spread(&stable);
         let values = self.reproductive_values();
         let scale: f64 = growth * values.iter().zip(&stable).map(|(value, share)| value * share).sum::<f64>();
         let part = |entries: &Matrix| {

@@ -8,6 +8,7 @@ mod first_study;
 mod folder;
 pub mod geojson;
 pub mod json;
+mod life_words;
 mod occupancy;
 mod terminal;
 #[cfg(test)]

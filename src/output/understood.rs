@@ -2,9 +2,10 @@
 
 use serde::Serialize;
 
+use super::life_words;
 use super::terminal::{Side, lines};
 use super::words::{amount, counted, grouped};
-use crate::demography::{LifeHistory, Matrix, Rate};
+use crate::demography::{Census, LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
 use crate::environment::Correlation;
 use crate::landscape::Crs;
@@ -68,6 +69,9 @@ struct Species {
     generation_years: Option<f64>,
     generation_is_stated: bool,
     density_dependence: String,
+    allee_effect: Vec<String>,
+    census: Option<&'static str>,
+    average_year: Vec<String>,
     stages: Vec<Stage>,
     elasticity_survival: f64,
     elasticity_fecundity: f64,
@@ -101,7 +105,10 @@ impl Understood {
             precision,
             landscape: Landscape::new(prepared),
             network: Network::new(prepared),
-            species: Species::new(&prepared.life_history, settings.generation_years),
+            species: Species {
+                allee_effect: life_words::allee_effect(prepared),
+                ..Species::new(&prepared.life_history, settings.generation_years)
+            },
             weather: weather(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
             head: head(settings),
@@ -264,6 +271,13 @@ impl Species {
             generation_years: life_history.generation_time().or(stated_generation_years),
             generation_is_stated: life_history.generation_time().is_none(),
             density_dependence: density_in_words(life_history),
+            allee_effect: Vec::new(),
+            census: life_history.census.map(Census::fecundity_in_words),
+            average_year: if life_history.kind == "stages" {
+                life_words::of_a_hundred(life_history)
+            } else {
+                Vec::new()
+            },
             stages,
             elasticity_survival: sum(&fates),
             elasticity_fecundity: sum(&young),
@@ -287,6 +301,19 @@ impl Species {
             rows.push(row("generation", &format!("{years:.2} years ({how})")));
         }
         rows.push(row("density dependence", &self.density_dependence));
+        rows.extend(
+            self.allee_effect
+                .iter()
+                .zip(["Allee effect", "where it leaves numbers"])
+                .map(|(text, label)| row(label, text)),
+        );
+        rows.extend(self.census.map(|text| row("census", text)));
+        rows.extend(
+            self.average_year
+                .iter()
+                .enumerate()
+                .map(|(position, text)| row(if position == 0 { "a year, without crowding" } else { "" }, text)),
+        );
         if self.kind == "stages" {
             let (survival, fecundity) = (self.elasticity_survival, self.elasticity_fecundity);
             rows.push(row(
@@ -334,14 +361,21 @@ fn column_sum(matrix: &Matrix, column: usize) -> f64 {
 /// The rates of a stage are the survivals in order, then the fecundities; a model of counts has growth alone.
 fn rate_in_words(life_history: &LifeHistory, stage: usize, which: &str) -> String {
     let n_stages = life_history.stages.len();
-    let of = |rate: &Rate| {
-        if rate.sd > 0.0 { format!("{} ({})", short(rate.mean), short(rate.sd)) } else { short(rate.mean) }
+    let scaled = |rate: &Rate, by: f64| {
+        let (mean, sd) = (by * rate.mean, by * rate.sd);
+        if sd > 0.0 { format!("{} ({})", short(mean), short(sd)) } else { short(mean) }
     };
+    let of = |rate: &Rate| scaled(rate, 1.0);
     match (life_history.kind, which) {
         ("counts", "survival") => "-".to_owned(),
         ("counts", _) => of(&life_history.rates[0]),
         (_, "survival") => of(&life_history.rates[stage]),
-        _ => of(&life_history.rates[n_stages + stage]),
+        // With litters the rate is the share that breeds; the matrix holds the young.
+        _ => {
+            let rate = &life_history.rates[n_stages + stage];
+            let young = column_sum(&life_history.matrix.young, stage);
+            scaled(rate, if rate.mean > 0.0 { young / rate.mean } else { 1.0 })
+        }
     }
 }
 

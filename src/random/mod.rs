@@ -7,6 +7,7 @@
 
 mod alias;
 mod binomial;
+mod gamma;
 mod hypergeometric;
 mod multinomial;
 mod normal;
@@ -20,6 +21,7 @@ mod thinning;
 
 pub use alias::AliasRows;
 pub use binomial::binomial;
+pub use gamma::gamma;
 pub use hypergeometric::hypergeometric;
 pub use multinomial::multinomial;
 pub use normal::standard_normal;

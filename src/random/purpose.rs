@@ -22,6 +22,14 @@ pub enum Purpose {
     Destinations(u32),
     /// who goes where there are too many
     Surplus,
+    /// which females breed where males are too few for all
+    Mating,
+    /// how many of the young are females
+    SexOfYoung,
+    /// how many young the litters have
+    Litter,
+    /// how far a year's individuals differ from each other in the number that they leave
+    Heterogeneity,
     /// whether a patch that is full or empty is full at the next census
     Turnover,
 }
@@ -37,6 +45,10 @@ impl Purpose {
             Self::Destinations(stage) => (6, stage),
             Self::Surplus => (7, 0),
             Self::Advance(stage) => (8, stage),
+            Self::Mating => (30, 0),
+            Self::SexOfYoung => (31, 0),
+            Self::Litter => (32, 0),
+            Self::Heterogeneity => (33, 0),
             Self::Turnover => (40, 0),
         };
         number << 32 | index as u64

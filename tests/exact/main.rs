@@ -7,6 +7,7 @@
 
 mod branching;
 mod chains;
+mod lifehistory;
 mod moments;
 mod occupancy;
 mod support;

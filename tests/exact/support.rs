@@ -35,7 +35,8 @@ pub(crate) struct Case {
     pub(crate) tables: String,
     /// `arrivals[i][j]`: probability that an emigrant of i arrives alive in j; empty where the tables say it
     pub(crate) arrivals: Vec<Vec<f64>>,
-    pub(crate) quasi_extinction: Option<u32>,
+    /// what stands in the study
+    pub(crate) quasi_extinction: Option<String>,
     pub(crate) replicates: u32,
 }
 
@@ -71,7 +72,13 @@ impl Case {
 
     /// Adds a threshold of quasi-extinction.
     pub(crate) fn below(mut self, threshold: u32) -> Self {
-        self.quasi_extinction = Some(threshold);
+        self.quasi_extinction = Some(threshold.to_string());
+        self
+    }
+
+    /// Adds a threshold of quasi-extinction over one stage.
+    pub(crate) fn below_of(mut self, threshold: u32, stage: &str) -> Self {
+        self.quasi_extinction = Some(format!("{{ below = {threshold}, stages = [\"{stage}\"] }}"));
         self
     }
 
@@ -89,7 +96,7 @@ impl Case {
             seed(self.name),
             self.replicates
         );
-        if let Some(threshold) = self.quasi_extinction {
+        if let Some(threshold) = &self.quasi_extinction {
             writeln!(study, "quasi_extinction = {threshold}").expect("a text takes what is written");
         }
         study.push_str(

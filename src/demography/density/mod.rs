@@ -128,7 +128,7 @@ impl Density {
             table.document().mistake(mistake.advise(advice));
             return None;
         }
-        let at_capacity = if idle { 1.0 } else { multiplier_at_capacity(matrix, self.on_survival, self.on_fecundity) };
+        let at_capacity = if idle { 1.0 } else { multiplier_at_balance(matrix, self.on_survival, self.on_fecundity) };
         let curve = make(table, Scale { at_capacity, log_growth: crate::num::ln(growth.max(1.0)) })?;
         if !idle {
             self.curve = Some(curve);
@@ -140,7 +140,7 @@ impl Density {
 
 /// The multiplier of the rates acted on that makes the dominant eigenvalue 1, by bisection to the last bit.
 /// Growth must be above 1 without it and below 1 at 0.
-fn multiplier_at_capacity(matrix: &ProjectionMatrix, on_survival: bool, on_fecundity: bool) -> f64 {
+pub(super) fn multiplier_at_balance(matrix: &ProjectionMatrix, on_survival: bool, on_fecundity: bool) -> f64 {
     let growth_at = |multiplier: f64| {
         let on = |acted_on: bool| if acted_on { multiplier } else { 1.0 };
         matrix.scaled(on(on_survival), on(on_fecundity)).dominant().0

@@ -5,6 +5,7 @@
 mod counts;
 mod occupancy;
 mod stages;
+mod young;
 
 pub use occupancy::{Occupancy, Turnover};
 

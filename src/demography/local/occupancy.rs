@@ -94,6 +94,8 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         matrix,
         density: Density::none(),
         model: Arc::new(FullOrEmpty),
+        allee_effect: None,
+        census: None,
         emigration_said: None,
         occupancy: Some(Occupancy { extinction_exponent, rescue }),
     })

@@ -4,25 +4,19 @@
 //! enter the first stage.
 
 mod matrix_form;
+mod sexes;
 mod table_form;
 
 use std::sync::Arc;
 
+use super::young::Young;
 use super::{LocalModel, Pressure, add};
+use crate::demography::allee::{self, AlleeEffect};
 use crate::demography::density::Density;
-use crate::demography::{LifeHistory, ProjectionMatrix, Rate, Stage};
+use crate::demography::{Census, LifeHistory, ProjectionMatrix, Rate, Stage};
 use crate::mistake::Mistake;
-use crate::random::{PlaceKey, Purpose, binomial, poisson};
+use crate::random::{PlaceKey, Purpose, binomial};
 use crate::study::{Said, Table};
-
-/// How many young a breeding individual has.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-enum Young {
-    /// a Poisson number with fecundity as its mean
-    Poisson,
-    /// one with fecundity as its probability, else none
-    AtMostOne,
-}
 
 /// Where the survivors of a stage go.
 #[derive(Debug, Clone, PartialEq)]
@@ -51,80 +45,73 @@ impl LocalModel for Stages {
     fn step(&self, counts: &mut [u32], rates: &[f64], pressure: Pressure, place: PlaceKey, next: &mut [u32]) -> bool {
         let (survival, fecundity) = rates.split_at(counts.len());
         next.fill(0);
-        let mut over = false;
-        for (stage, fates) in self.fates.iter().enumerate() {
-            let count = counts[stage];
-            if count == 0 || fates.shares.is_empty() {
-                continue;
-            }
-            let chance = survival[stage] * pressure.survival;
-            let mut left = binomial(&mut place.draw(Purpose::Fates(stage as u32)), count, chance);
-            let (last, others) = fates.shares.split_last().expect("a stage with survivors has a fate");
-            if !others.is_empty() {
-                let mut stream = place.draw(Purpose::Advance(stage as u32));
-                for (to, share) in others {
-                    let moved = binomial(&mut stream, left, *share);
-                    over |= add(&mut next[*to], moved);
-                    left -= moved;
-                }
-            }
-            over |= add(&mut next[last.0], left);
-        }
-        let born = self.born(counts, fecundity, pressure.fecundity, place);
-        over |= born == u32::MAX;
-        over |= add(&mut next[0], born);
+        let mut over = survive(&self.fates, counts, survival, pressure.survival, place, next);
+        let born = self.young.number(counts, fecundity, pressure.fecundity, place);
+        over |= add(&mut next[0], born) || born == u32::MAX;
         counts.copy_from_slice(next);
         over
     }
 
     fn young_in_words(&self) -> String {
-        match self.young {
-            Young::Poisson => "the number of young is Poisson".to_owned(),
-            Young::AtMostOne => "each individual has one young or none".to_owned(),
-        }
+        self.young.in_words()
     }
 }
 
-impl Stages {
-    /// The young of all stages; the largest count stands for all that would pass it.
-    fn born(&self, counts: &[u32], fecundity: &[f64], pressure: f64, place: PlaceKey) -> u32 {
-        match self.young {
-            // A sum of independent Poisson numbers is Poisson: one draw for all stages.
-            Young::Poisson => {
-                let mean: f64 = counts.iter().zip(fecundity).map(|(count, rate)| f64::from(*count) * rate).sum();
-                poisson(&mut place.draw(Purpose::Young(0)), mean * pressure)
-            }
-            Young::AtMostOne => counts
-                .iter()
-                .zip(fecundity)
-                .enumerate()
-                .filter(|(_, (count, rate))| **count > 0 && **rate > 0.0)
-                .map(|(stage, (count, rate))| {
-                    binomial(&mut place.draw(Purpose::Young(stage as u32)), *count, rate * pressure)
-                })
-                .fold(0, u32::saturating_add),
+/// Survival with advance: adds to `next` what becomes of `counts`. Says whether a count had to stop at the largest.
+fn survive(
+    fates: &[Fates],
+    counts: &[u32],
+    survival: &[f64],
+    pressure: f64,
+    place: PlaceKey,
+    next: &mut [u32],
+) -> bool {
+    let mut over = false;
+    for (stage, fates) in fates.iter().enumerate() {
+        let count = counts[stage];
+        if count == 0 || fates.shares.is_empty() {
+            continue;
         }
+        let chance = survival[stage] * pressure;
+        let mut left = binomial(&mut place.draw(Purpose::Fates(stage as u32)), count, chance);
+        let (last, others) = fates.shares.split_last().expect("a stage with survivors has a fate");
+        if !others.is_empty() {
+            let mut stream = place.draw(Purpose::Advance(stage as u32));
+            for (to, share) in others {
+                let moved = binomial(&mut stream, left, *share);
+                over |= add(&mut next[*to], moved);
+                left -= moved;
+            }
+        }
+        over |= add(&mut next[last.0], left);
     }
+    over
 }
 
 /// Reads the life cycle, as rows or as a whole matrix, and what stands beside it.
 pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
-    let individuals = table.choice("individuals", &[("females", "females"), ("individuals", "individuals")]);
-    let young = if table.has("young") {
-        table.choice("young", &[("poisson", Young::Poisson), ("at most one", Young::AtMostOne)]).map(|said| said.value)
-    } else {
-        Some(Young::Poisson)
-    };
+    let choices = [("females", "females"), ("individuals", "individuals"), (sexes::INDIVIDUALS, sexes::INDIVIDUALS)];
+    let individuals = table.choice("individuals", &choices);
+    if individuals.as_ref().is_some_and(|said| said.value == sexes::INDIVIDUALS) {
+        return sexes::read(table);
+    }
+    for key in ["female_share", "harem_size"].into_iter().filter(|key| table.has(key)) {
+        table.mistake(table.address(key), "no such key unless individuals = \"both sexes\"");
+    }
+    let census = Census::read(table);
+    let young = Young::read(table);
+    let as_read = young.clone().unwrap_or(Young::Poisson);
     let cycle = match (table.has("stage"), table.has("matrix")) {
-        (_, true) => matrix_form::read(table, young.unwrap_or(Young::Poisson)),
-        (true, false) => table_form::read(table, young.unwrap_or(Young::Poisson)),
+        (_, true) => matrix_form::read(table, &as_read),
+        (true, false) => table_form::read(table, &as_read),
         (false, false) => {
             table.missing("stage", "stages, each under [[life_history.stage]], or a whole matrix = [[..], ..]");
             None
         }
     };
-    let matrix = cycle.as_ref().map(projection_matrix);
+    let matrix = cycle.as_ref().map(|cycle| projection_matrix(cycle, &as_read));
     let density = Density::read(table, matrix.as_ref(), false);
+    let allee_effect = AlleeEffect::read(table, cycle.as_ref().map(breeders));
     let (cycle, matrix, density) = (cycle?, matrix?, density?);
     if density.ceiling {
         refuse_partial_weights(table, &cycle.stages)?;
@@ -138,21 +125,28 @@ pub(super) fn read(table: &Table<'_>) -> Option<LifeHistory> {
         rates,
         matrix,
         density,
-        model: Arc::new(Stages { fates, young: young? }),
+        model: allee::under(allee_effect.as_ref(), Arc::new(Stages { fates, young: young? })),
+        allee_effect,
+        census,
         emigration_said: cycle.emigration_said,
         occupancy: None,
     })
 }
 
-fn projection_matrix(cycle: &Cycle) -> ProjectionMatrix {
+fn projection_matrix(cycle: &Cycle, young: &Young) -> ProjectionMatrix {
     let mut matrix = ProjectionMatrix::zero(cycle.stages.len());
     for (from, shares) in cycle.fate_shares.iter().enumerate() {
         for (to, share) in shares.iter().enumerate() {
             matrix.fates[(to, from)] = cycle.survival[from].mean * share;
         }
-        matrix.young[(0, from)] = cycle.fecundity[from].mean;
+        matrix.young[(0, from)] = young.mean(&cycle.fecundity[from]);
     }
     matrix
+}
+
+/// The stages with mean fecundity above 0.
+fn breeders(cycle: &Cycle) -> Vec<usize> {
+    (0..cycle.fecundity.len()).filter(|stage| cycle.fecundity[*stage].mean > 0.0).collect()
 }
 
 fn fates(shares: &[f64]) -> Fates {

@@ -2,14 +2,15 @@
 
 use std::collections::BTreeSet;
 
-use super::table_form::{law_of_young, read_common, read_name};
-use super::{Cycle, Young};
+use super::Cycle;
+use super::table_form::{read_common, read_name};
+use crate::demography::local::young::Young;
 use crate::demography::rate::impossible_sd;
 use crate::demography::{Law, Rate, RateGroup, Stage};
 use crate::mistake::Mistake;
 use crate::study::{NOT_NEGATIVE, PROBABILITY, Said, Table};
 
-pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
+pub(super) fn read(table: &Table<'_>, young: &Young) -> Option<Cycle> {
     let rows = read_rows(table);
     let survival_sd = table.numbers("survival_sd", NOT_NEGATIVE);
     let fecundity_sd = table.numbers("fecundity_sd", NOT_NEGATIVE);
@@ -38,22 +39,25 @@ pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
         let survival: f64 = fates.iter().sum();
         let name = cycle.stages[from].name.clone();
         sound &= survival_is_possible(table, &matrix, &name, survival);
-        let rate = |what: &str, mean, sd, group, law| Rate {
-            address: format!("life_history.{name}.{what}"),
-            mean,
-            sd,
-            group,
-            law,
+        let address = |what: &str| format!("life_history.{name}.{what}");
+        let alive = Rate {
+            address: address("survival"),
+            mean: survival.min(1.0),
+            sd: at(&survival_sd, from),
+            group: RateGroup::Survival,
+            law: Law::Beta,
         };
-        let alive = rate("survival", survival.min(1.0), at(&survival_sd, from), RateGroup::Survival, Law::Beta);
-        let born =
-            rate("fecundity", entry - fates[0], at(&fecundity_sd, from), RateGroup::Fecundity, law_of_young(young));
-        sound &=
-            sd_is_possible(table, survival_sd.as_ref(), &alive) & sd_is_possible(table, fecundity_sd.as_ref(), &born);
-        sound &= young_are_possible(table, &matrix, young, &born);
+        let (born, born_sd) = (entry - fates[0], at(&fecundity_sd, from));
+        let sd = said_sd(survival_sd.as_ref(), &alive.address, alive.sd);
+        sound &= is_possible(table, sd.and_then(|sd| impossible_sd(&sd, alive.mean, alive.law)));
+        let sd = said_sd(fecundity_sd.as_ref(), &address("fecundity"), born_sd);
+        sound &= is_possible(table, sd.and_then(|sd| young.impossible_sd(&sd, born)));
+        let too_many =
+            young.too_many(born).map(|expected| matrix.mistake(format!("for {}: {expected}", address("fecundity"))));
+        sound &= is_possible(table, too_many);
         cycle.fate_shares.push(fates.iter().map(|fate| if survival > 0.0 { fate / survival } else { 0.0 }).collect());
         cycle.survival.push(alive);
-        cycle.fecundity.push(born);
+        cycle.fecundity.push(young.rate(address("fecundity"), born, born_sd));
     }
     sound.then_some(cycle)
 }
@@ -129,21 +133,13 @@ fn survival_is_possible(table: &Table<'_>, matrix: &Said<Vec<Vec<f64>>>, stage: 
     possible
 }
 
-fn sd_is_possible(table: &Table<'_>, list: Option<&Said<Vec<f64>>>, rate: &Rate) -> bool {
-    let Some(list) = list else { return true };
-    let words = format!("{}.sd = {}", rate.address, rate.sd);
-    let said = Said { value: rate.sd, place: list.place.clone(), words };
-    let mistake: Option<Mistake> = impossible_sd(&said, rate.mean, rate.law);
-    let possible = mistake.is_none();
-    mistake.into_iter().for_each(|mistake| table.document().mistake(mistake));
-    possible
+/// An sd of a list of them, by the address that it would have in a row of its own.
+fn said_sd(list: Option<&Said<Vec<f64>>>, address: &str, sd: f64) -> Option<Said<f64>> {
+    list.map(|list| Said { value: sd, place: list.place.clone(), words: format!("{address}.sd = {sd}") })
 }
 
-fn young_are_possible(table: &Table<'_>, matrix: &Said<Vec<Vec<f64>>>, young: Young, born: &Rate) -> bool {
-    let possible = young != Young::AtMostOne || born.mean <= 1.0;
-    if !possible {
-        let expected = format!("a probability for {} where young = \"at most one\", not {}", born.address, born.mean);
-        table.document().mistake(matrix.mistake(expected));
-    }
+fn is_possible(table: &Table<'_>, mistake: Option<Mistake>) -> bool {
+    let possible = mistake.is_none();
+    mistake.into_iter().for_each(|mistake| table.document().mistake(mistake));
     possible
 }

@@ -2,7 +2,8 @@
 
 use std::collections::BTreeSet;
 
-use super::{Cycle, Young};
+use super::Cycle;
+use crate::demography::local::young::Young;
 use crate::demography::{Law, Rate, RateGroup, Stage};
 use crate::study::{PROBABILITY, Said, Table};
 
@@ -15,17 +16,40 @@ struct Row {
     emigration: Option<Said<f64>>,
 }
 
-pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
+/// Reads the rows of a life cycle whose stages follow each other as they stand.
+pub(super) fn read(table: &Table<'_>, young: &Young) -> Option<Cycle> {
     let rows = table.tables("stage");
-    let last = rows.len().checked_sub(1)?;
+    let next: Vec<Option<usize>> = (1..=rows.len()).map(|next| (next < rows.len()).then_some(next)).collect();
+    read_rows(rows, &next, young, &mut |row, _| {
+        for key in ["sex", "mates"].into_iter().filter(|key| row.has(key)) {
+            row.mistake(row.address(key), "no such key unless individuals = \"both sexes\"");
+        }
+    })
+}
+
+/// Reads rows of which each is followed by the row `next` says, if any. `read_more` reads the keys of a row that not every
+/// life cycle has; it is told the row's position.
+pub(super) fn read_rows(
+    rows: Vec<Table<'_>>,
+    next: &[Option<usize>],
+    young: &Young,
+    read_more: &mut dyn FnMut(&Table<'_>, usize),
+) -> Option<Cycle> {
     let mut names = BTreeSet::new();
     let rows: Vec<Option<Row>> = rows
         .into_iter()
         .enumerate()
-        .map(|(position, row)| read_row(row, young, position == last, &mut names))
+        .map(|(position, mut row)| {
+            let name = read_name(&mut row, &mut names);
+            read_more(&row, position);
+            read_row(row, name, young, next[position].is_none())
+        })
         .collect();
+    if rows.is_empty() {
+        return None;
+    }
     let rows: Vec<Row> = rows.into_iter().collect::<Option<_>>()?;
-    let fate_shares = (0..rows.len()).map(|from| shares(&rows, from)).collect();
+    let fate_shares = (0..rows.len()).map(|from| shares(&rows, from, next[from])).collect();
     let emigration_said = rows.iter().find_map(|row| row.emigration.clone().filter(|said| said.value > 0.0));
     let mut cycle = Cycle { stages: vec![], survival: vec![], fate_shares, fecundity: vec![], emigration_said };
     for row in rows {
@@ -36,18 +60,13 @@ pub(super) fn read(table: &Table<'_>, young: Young) -> Option<Cycle> {
     Some(cycle)
 }
 
-fn read_row(mut row: Table<'_>, young: Young, last: bool, names: &mut BTreeSet<String>) -> Option<Row> {
-    let name = read_name(&mut row, names);
+fn read_row(row: Table<'_>, name: Option<String>, young: &Young, last: bool) -> Option<Row> {
     let survival = Rate::read(&row, "survival", RateGroup::Survival, Law::Beta);
     if !row.has("survival") {
         row.missing("survival", "the share alive a year later, as a number or { mean = .., sd = .. }");
     }
     let advance = read_advance(&row, last);
-    let fecundity = if row.has("fecundity") {
-        Rate::read(&row, "fecundity", RateGroup::Fecundity, law_of_young(young))
-    } else {
-        Some(Rate::fixed(row.address("fecundity"), 0.0, RateGroup::Fecundity, Law::Lognormal))
-    };
+    let fecundity = young.read_fecundity(&row);
     let (emigration, toward_capacity) = read_common(&row);
     row.finish();
     let stage = Stage {
@@ -56,14 +75,6 @@ fn read_row(mut row: Table<'_>, young: Young, last: bool, names: &mut BTreeSet<S
         toward_capacity: toward_capacity.map_or(1.0, |said| said.value),
     };
     Some(Row { stage, survival: survival?, advance, fecundity: fecundity?, emigration })
-}
-
-/// The distribution over years of a fecundity: a probability where there is at most one young.
-pub(super) fn law_of_young(young: Young) -> Law {
-    match young {
-        Young::Poisson => Law::Lognormal,
-        Young::AtMostOne => Law::Beta,
-    }
 }
 
 /// The keys that a stage row has also where a matrix stands in place of the rates.
@@ -101,16 +112,13 @@ fn read_advance(row: &Table<'_>, last: bool) -> Option<Said<f64>> {
 }
 
 /// The shares of a stage's survivors that are found in each stage a year later.
-fn shares(rows: &[Row], from: usize) -> Vec<f64> {
+fn shares(rows: &[Row], from: usize, next: Option<usize>) -> Vec<f64> {
     let mut shares = vec![0.0; rows.len()];
-    let advance = match &rows[from].advance {
-        Some(said) => said.value,
-        None if from + 1 < rows.len() => 1.0,
-        None => 0.0,
-    };
+    let unless_said = if next.is_some() { 1.0 } else { 0.0 };
+    let advance = rows[from].advance.as_ref().map_or(unless_said, |said| said.value);
     shares[from] = 1.0 - advance;
-    if from + 1 < rows.len() {
-        shares[from + 1] = advance;
+    if let Some(next) = next {
+        shares[next] = advance;
     }
     shares
 }
