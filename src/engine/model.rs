@@ -2,10 +2,12 @@
 
 use std::sync::Arc;
 
+use super::capacity::ChangingCapacity;
 use super::movement::Movement;
 use super::realise::Rates;
 use crate::demography::density::Curve;
-use crate::demography::local::LocalModel;
+use crate::demography::local::{LocalModel, Pressure};
+use crate::environment::Catastrophes;
 
 /// The threshold of quasi-extinction.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -34,8 +36,12 @@ pub struct Model {
     pub(super) patch_keys: Vec<u64>,
     /// individuals at census 0, `[patch][stage]`
     pub(super) start: Vec<u32>,
-    /// carrying capacity by patch
+    /// carrying capacity by patch at census 0
     pub(super) capacity: Vec<f64>,
+    pub(super) changing_capacity: Option<ChangingCapacity>,
+    /// multipliers of rates in a patch and year without capacity: 0 on those that density acts on
+    pub(super) without_capacity: Pressure,
+    pub(super) catastrophes: Option<Catastrophes>,
     /// what an individual of each stage counts toward capacity
     pub(super) toward_capacity: Vec<f64>,
     pub(super) local: Arc<dyn LocalModel>,

@@ -2,10 +2,10 @@
 
 use std::path::Path;
 
-use super::compile::{compile, start_counts};
+use super::compile::{Years, compile, start_counts};
 use super::model::Model;
 use crate::demography::LifeHistory;
-use crate::environment::EnvironmentTable;
+use crate::environment::{Catastrophe, EnvironmentTable};
 use crate::landscape::{Landscape, LandscapeTable, Neighbours};
 use crate::mistake::{Checked, Failure, Mistake};
 use crate::network::{DispersalTable, Network};
@@ -35,6 +35,8 @@ pub struct Prepared {
     pub life_history: LifeHistory,
     /// how years vary
     pub environment: EnvironmentTable,
+    /// what strikes now and then
+    pub catastrophes: Vec<Catastrophe>,
     /// the compiled model
     pub model: Model,
     /// the files that went into it
@@ -65,6 +67,8 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         Some(table) => EnvironmentTable::read(table),
         None => Some(EnvironmentTable::default()).filter(|_| !root.has("environment")),
     };
+    let (kind, horizon) = (life_history.as_ref().map(|read| read.kind), settings.as_ref().map(|read| read.horizon));
+    let catastrophes = Catastrophe::read_all(&root, kind, horizon);
     let dispersal = root.table("dispersal").map(DispersalTable::read);
     let landscape_table =
         required(&root, "landscape", "the patches: their file, capacity and start").and_then(LandscapeTable::read);
@@ -74,6 +78,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
 
     let mut settings = settings?;
     let (life_history, environment, landscape) = (life_history?, environment?, landscape?);
+    let catastrophes = catastrophes?;
     let dispersal = match dispersal {
         Some(read) => Some(read?),
         None => None,
@@ -89,7 +94,8 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     if !document.is_clean() {
         return None;
     }
-    let model = compile(&settings, &landscape, &life_history, &environment, &network, start, counted_stages);
+    let years = Years { environment: &environment, catastrophes: &catastrophes };
+    let model = compile(&settings, &landscape, &life_history, &years, &network, start, counted_stages);
     let model = match model {
         Ok(model) => model,
         Err(reason) => {
@@ -107,6 +113,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         network,
         life_history,
         environment,
+        catastrophes,
         model,
         inputs: document.inputs(),
     })
