@@ -11,6 +11,7 @@ pub mod json;
 mod terminal;
 #[cfg(test)]
 mod tests;
+mod threats;
 mod understood;
 mod words;
 

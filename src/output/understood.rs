@@ -3,6 +3,7 @@
 use serde::Serialize;
 
 use super::terminal::{Side, lines};
+use super::threats::Threats;
 use super::words::{amount, counted, grouped};
 use crate::demography::{LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
@@ -27,6 +28,7 @@ pub struct Understood {
     network: Option<Network>,
     species: Species,
     weather: String,
+    threats: Option<Threats>,
     warnings: Vec<String>,
 }
 
@@ -99,6 +101,7 @@ impl Understood {
             network: Network::new(prepared),
             species: Species::new(&prepared.life_history),
             weather: weather(prepared),
+            threats: Threats::new(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
         }
     }
@@ -119,8 +122,9 @@ impl Understood {
         };
         let head =
             format!("{}: {}, {effort}, seed {}\n", self.title, counted(self.horizon_years.into(), "year"), self.seed);
-        let parts =
-            [head, self.landscape.text(), self.network_text(), self.species.text(), format!("{}\n", self.weather)];
+        let mut parts =
+            vec![head, self.landscape.text(), self.network_text(), self.species.text(), format!("{}\n", self.weather)];
+        parts.extend(self.threats.as_ref().map(Threats::text));
         parts.join("\n")
     }
 

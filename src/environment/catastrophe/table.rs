@@ -168,3 +168,124 @@ fn whole_year(table: &Table<'_>, item: &Item<'_>, expected: &str) -> Option<Said
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::environment::catastrophe::Begins;
+    use crate::mistake::Warning;
+    use crate::study::Document;
+    use std::path::Path;
+
+    /// What was read, the mistakes, and the warnings, as the user sees them.
+    fn read(text: &str, kind: &str) -> (Option<Vec<Catastrophe>>, String, String) {
+        let document = Document::parse(Path::new("fen.toml"), text.to_owned());
+        let read = Catastrophe::read_all(&document.root(), Some(kind), Some(50));
+        match document.verdict() {
+            Ok(warnings) => {
+                let warnings: Vec<String> = warnings.iter().map(|warning| Warning(warning).to_string()).collect();
+                (read, String::new(), warnings.join("\n"))
+            }
+            Err(mistakes) => (read, mistakes.to_string(), String::new()),
+        }
+    }
+
+    /// The study of these lines under one `[[catastrophe]]` must be refused with all these words.
+    fn refused(lines: &str, kind: &str, words: &[&str]) {
+        let (_, mistakes, _) = read(&format!("[[catastrophe]]\n{lines}"), kind);
+        for word in words {
+            assert!(mistakes.contains(word), "no `{word}` in:\n{mistakes}");
+        }
+    }
+
+    const FLOOD: &str = "[[catastrophe]]\nname = \"flood\"\nyearly_probability = 0.04\nstrikes = { radius_km = 3 }\n\
+                         lasts = { chance_of_another_year = 0.25 }\nsurvival = 0.3\ncapacity = 0.5\norigin = \"gauges\"\n";
+
+    #[test]
+    fn all_that_may_be_said_is_read() {
+        let drought = "[[catastrophe]]\nname = \"drought\"\nyears = [12, 40]\nstrikes = \"landscape\"\nfecundity = 0\nlasts = 2\n";
+        let (found, mistakes, warnings) = read(&format!("{FLOOD}{drought}"), "stages");
+        assert_eq!((mistakes.as_str(), warnings.as_str()), ("", ""));
+        let [flood, drought] = found.unwrap().try_into().unwrap();
+        assert_eq!((flood.yearly_probability, flood.lasts), (0.04, Lasts::AnotherYear(0.25)));
+        assert_eq!(flood.left, Shares { survival: 0.3, fecundity: 1.0, capacity: 0.5 });
+        assert_eq!((flood.strikes.begins(), flood.years.len()), (Begins::AtOnePatch, 0));
+        assert!(flood.strikes.reaches(0, 1, &[[0.0, 0.0], [3.0, 0.0]]));
+        assert!(!flood.strikes.reaches(0, 1, &[[0.0, 0.0], [3.001, 0.0]]));
+        assert_eq!((drought.yearly_probability, drought.years, drought.lasts), (0.0, vec![12, 40], Lasts::Years(2)));
+        let growth =
+            "[[catastrophe]]\nname = \"frost\"\nyearly_probability = 1\nstrikes = \"one patch\"\ngrowth = 0.2\n";
+        assert_eq!(read(growth, "counts").0.unwrap()[0].left.fecundity, 0.2);
+        assert!(read("", "stages").0.unwrap().is_empty());
+    }
+
+    #[test]
+    fn every_mistake_is_named() {
+        refused(
+            "survival = 1.3\nfecundity = -0.1\nstrikes = \"each path\"\nlasts = 0\nyearly_probability = 4\nyear = [3]\n",
+            "stages",
+            &[
+                "catastrophe.1.name is missing",
+                "fen.toml:2:1  catastrophe.1.survival = 1.3",
+                "leaves more than all of survival",
+                "catastrophe.1.fecundity = -0.1",
+                "write \"each patch\"",
+                "catastrophe.1.lasts = 0",
+                "once in 25 years is 0.04",
+                "write years",
+            ],
+        );
+        let named = "name = \"flood\"\n";
+        refused(
+            named,
+            "stages",
+            &["catastrophe.flood.yearly_probability is missing", "catastrophe.flood.strikes is missing"],
+        );
+        refused(&format!("{named}strikes = {{ radius_km = 0 }}"), "stages", &["radius_km = 0", "above 0"]);
+        refused(
+            &format!("{named}strikes = {{ radius = 1 }}"),
+            "stages",
+            &["radius_km is missing", "radius is not a key"],
+        );
+        refused(&format!("{named}strikes = 3"), "stages", &["strikes = 3", "\"landscape\" or { radius_km = .. }"]);
+        let lasting = |lasts: &str| format!("{named}lasts = {lasts}");
+        refused(&lasting("{ chance_of_another_year = 1 }"), "stages", &["never ends", "lower the rates"]);
+        refused(&lasting("{ chance_of_another_year = -1 }"), "stages", &["0 or above and below 1"]);
+        refused(&lasting("{ }"), "stages", &["chance_of_another_year is missing"]);
+        refused(&lasting("1.5"), "stages", &["a whole number from 1"]);
+        refused(&lasting("\"long\""), "stages", &["chance_of_another_year = 0.6"]);
+        let years = |years: &str| format!("{named}years = {years}");
+        refused(&years("[12, 5]"), "stages", &["= 5", "a year after 12"]);
+        refused(&years("[5, 5]"), "stages", &["a year after 5"]);
+        refused(&years("[]"), "stages", &["years = []"]);
+        refused(&years("[2.5]"), "stages", &["= 2.5", "whole numbers"]);
+        refused(&years("2024"), "stages", &["a list of whole numbers"]);
+        refused(
+            &format!("{named}growth = 0.5"),
+            "stages",
+            &["growth with life_history.kind = \"stages\"", "survival, fecundity, capacity"],
+        );
+        refused(
+            &format!("{named}survival = 0.5\nfecundity = 0.1"),
+            "counts",
+            &["catastrophe.flood.survival with", "catastrophe.flood.fecundity with", "growth, capacity"],
+        );
+        refused("name = \" \"", "stages", &["a name that can be read"]);
+        let (found, mistakes, _) = read(&format!("{FLOOD}{FLOOD}"), "stages");
+        assert!(found.is_none() && mistakes.contains("fen.toml:10:1") && mistakes.contains("rename one"), "{mistakes}");
+        let (found, mistakes, _) = read("[catastrophe]\nname = \"flood\"\n", "stages");
+        assert!(found.is_none() && mistakes.contains("[[catastrophe]]"), "{mistakes}");
+    }
+
+    #[test]
+    fn what_is_odd_is_warned_of() {
+        let odd = |lines: &str| {
+            read(&format!("[[catastrophe]]\nname = \"flood\"\nstrikes = \"landscape\"\n{lines}"), "stages").2
+        };
+        assert!(odd("yearly_probability = 0.1").contains("changes nothing"));
+        assert!(odd("yearly_probability = 0.1\nsurvival = 1").contains("leaves all of every rate"));
+        assert!(odd("yearly_probability = 0\nsurvival = 0.1").contains("a yearly_probability of 0"));
+        assert!(odd("years = [3, 50]\nsurvival = 0.1").contains("never reached: the last year of this study is 49"));
+        assert_eq!(odd("years = [49]\nsurvival = 0.1"), "");
+    }
+}
