@@ -72,7 +72,8 @@ mod tests {
     #[test]
     fn a_trend_compounds() {
         let shrinking = CapacityOverTime::new(-0.5, 0.0, Vec::new());
-        assert_eq!([0, 1, 2].map(|year| shrinking.mean_in(0, year, 80.0)), [80.0, 40.0, 20.0]);
+        let seen: Vec<f64> = [0, 1, 2].iter().map(|year| shrinking.mean_in(0, *year, 80.0)).collect();
+        assert_eq!(seen, [80.0, 40.0, 20.0]);
         let growing = CapacityOverTime::new(1.0, 0.0, Vec::new());
         assert!(growing.mean_in(0, 100_000, 80.0).is_finite());
         assert!(CapacityOverTime::new(0.0, 0.0, vec![vec![(0, 3.0)], vec![(0, 5.0)]]).is_constant());

@@ -39,8 +39,8 @@ pub(super) fn capacities(
     let repeats = if by_years { Repeats::Lawful } else { Repeats::Refused };
     let Some(table) = Rows::of(table, said, names, repeats, findings) else { return courses };
     let expected: &[&str] = if by_years { &[YEAR, CAPACITY] } else { &[CAPACITY] };
-    table.refuse_other_columns(expected, findings);
     let Some(capacity) = table.column(CAPACITY, findings) else { return courses };
+    table.refuse_other_columns(expected, findings);
     let year = if by_years { table.column(YEAR, findings) } else { None };
     let mut spoilt = vec![false; features];
     for (feature, row) in &table.rows {

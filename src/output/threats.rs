@@ -20,7 +20,9 @@ pub(super) struct Threats {
 #[derive(Debug, Serialize)]
 struct Said {
     name: String,
-    text: String,
+    begins: String,
+    strikes: String,
+    leaves: String,
 }
 
 impl Threats {
@@ -29,7 +31,9 @@ impl Threats {
         let counts = prepared.life_history.kind == "counts";
         let said = |catastrophe: &Catastrophe| Said {
             name: catastrophe.name.clone(),
-            text: format!("{}; leaves {}", when_and_where(catastrophe), left(catastrophe, counts)),
+            begins: begins(catastrophe),
+            strikes: format!("{} {}", catastrophe.strikes.in_words(), catastrophe.lasts.in_words()),
+            leaves: left(catastrophe, counts),
         };
         let threats =
             Self { catastrophes: prepared.catastrophes.iter().map(said).collect(), capacity: capacity(prepared) };
@@ -39,29 +43,38 @@ impl Threats {
     /// For the terminal.
     pub(super) fn text(&self) -> String {
         let row = |label: &str, text: &str| vec![label.to_owned(), text.to_owned()];
-        let mut rows: Vec<Vec<String>> = self.catastrophes.iter().map(|said| row(&said.name, &said.text)).collect();
+        let mut rows = Vec::new();
+        for said in &self.catastrophes {
+            rows.push(row(&said.name, &format!("begins {}", said.begins)));
+            rows.push(row("", &format!("strikes {}", said.strikes)));
+            rows.push(row("", &format!("leaves {}", said.leaves)));
+        }
         rows.extend(self.capacity.as_ref().map(|text| row("capacity", text)));
         format!("Catastrophes and change\n{}", lines(rows, &[Side::Left, Side::Left]).concat())
     }
 }
 
-fn when_and_where(catastrophe: &Catastrophe) -> String {
+fn begins(catastrophe: &Catastrophe) -> String {
     let mut chances = Vec::new();
     if catastrophe.yearly_probability > 0.0 {
         let where_drawn = match catastrophe.strikes.begins() {
             Begins::InEachPatch => "in each patch",
             Begins::Everywhere | Begins::AtOnePatch => "in the landscape",
         };
-        chances.push(format!("begins with chance {} a year {where_drawn}", catastrophe.yearly_probability));
+        chances.push(format!("with chance {} a year {where_drawn}", catastrophe.yearly_probability));
     }
     if !catastrophe.years.is_empty() {
         let years: Vec<String> = catastrophe.years.iter().map(u32::to_string).collect();
-        chances.push(format!("begins for certain in year {}", years.join(", ")));
+        chances.push(format!(
+            "for certain in {} {}",
+            if years.len() == 1 { "year" } else { "years" },
+            years.join(", ")
+        ));
     }
     if chances.is_empty() {
-        chances.push("never begins".to_owned());
+        chances.push("never".to_owned());
     }
-    format!("{}; strikes {} {}", chances.join(" and "), catastrophe.strikes.in_words(), catastrophe.lasts.in_words())
+    chances.join(" and ")
 }
 
 fn left(catastrophe: &Catastrophe, counts: bool) -> String {

@@ -172,7 +172,11 @@ fn a_clock_runs_in_each_patch() {
         let struck = struck_years(&case, 10, 20_000);
         for (year, quiet_years) in [(0, 1), (1, 2), (2, 3), (9, 3)] {
             let count = struck.iter().filter(|years| years[year][1]).count() as u64;
-            seen.probability(&format!("struck in {year}"), count, 1.0 - (1.0_f64 - p).powi(quiet_years));
+            seen.probability(
+                &format!("struck in {year}"),
+                count,
+                1.0 - eyot::num::pow(1.0 - p, f64::from(quiet_years)),
+            );
         }
     }
 }

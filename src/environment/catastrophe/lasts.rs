@@ -40,7 +40,7 @@ impl Lasts {
             Self::Years(1) => "for 1 year".to_owned(),
             Self::Years(years) => format!("for {years} years"),
             Self::AnotherYear(chance) => {
-                format!("for {:.3} years on average (another year with chance {chance})", 1.0 / (1.0 - chance))
+                format!("for {:.1} years on average (another with chance {chance})", 1.0 / (1.0 - chance))
             }
         }
     }

@@ -215,7 +215,8 @@ mod tests {
         assert_eq!((drought.yearly_probability, drought.years, drought.lasts), (0.0, vec![12, 40], Lasts::Years(2)));
         let growth =
             "[[catastrophe]]\nname = \"frost\"\nyearly_probability = 1\nstrikes = \"one patch\"\ngrowth = 0.2\n";
-        assert_eq!(read(growth, "counts").0.unwrap()[0].left.fecundity, 0.2);
+        let left = Shares { fecundity: 0.2, ..Shares::ALL };
+        assert_eq!(read(growth, "counts").0.unwrap()[0].left, left);
         assert!(read("", "stages").0.unwrap().is_empty());
     }
 

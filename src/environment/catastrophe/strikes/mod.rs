@@ -34,8 +34,10 @@ pub trait Strikes: Debug + Send + Sync {
     fn in_words(&self) -> String;
 }
 
+type Make = fn() -> Arc<dyn Strikes>;
+
 /// The kinds that are a word alone.
-const WORDS: &[(&str, fn() -> Arc<dyn Strikes>)] =
+const WORDS: &[(&str, Make)] =
     &[("each patch", each_patch::make), ("one patch", one_patch::make), ("landscape", landscape::make)];
 
 /// Reads the key `strikes` of a `[[catastrophe]]`. `None` if it is missing or wrong, which has then been noted.
