@@ -12,8 +12,8 @@ use crate::environment::catastrophe::Begins;
 #[derive(Debug, Serialize)]
 pub(super) struct Threats {
     catastrophes: Vec<Said>,
-    /// `None` where capacity stays as it is
-    capacity: Option<String>,
+    /// empty where capacity stays as it is
+    capacity: Vec<String>,
 }
 
 /// A catastrophe in words.
@@ -37,7 +37,7 @@ impl Threats {
         };
         let threats =
             Self { catastrophes: prepared.catastrophes.iter().map(said).collect(), capacity: capacity(prepared) };
-        (!threats.catastrophes.is_empty() || threats.capacity.is_some()).then_some(threats)
+        (!threats.catastrophes.is_empty() || !threats.capacity.is_empty()).then_some(threats)
     }
 
     /// For the terminal.
@@ -49,7 +49,8 @@ impl Threats {
             rows.push(row("", &format!("strikes {}", said.strikes)));
             rows.push(row("", &format!("leaves {}", said.leaves)));
         }
-        rows.extend(self.capacity.as_ref().map(|text| row("capacity", text)));
+        let labels = std::iter::once("capacity").chain(std::iter::repeat(""));
+        rows.extend(labels.zip(&self.capacity).map(|(label, text)| row(label, text)));
         format!("Catastrophes and change\n{}", lines(rows, &[Side::Left, Side::Left]).concat())
     }
 }
@@ -91,11 +92,8 @@ fn left(catastrophe: &Catastrophe, counts: bool) -> String {
     if taken.is_empty() { "everything as it is".to_owned() } else { taken.join(", ") }
 }
 
-fn capacity(prepared: &Prepared) -> Option<String> {
+fn capacity(prepared: &Prepared) -> Vec<String> {
     let over_time = &prepared.landscape.capacity_over_time;
-    if over_time.is_constant() {
-        return None;
-    }
     let mut parts = Vec::new();
     if over_time.trend_per_year != 0.0 {
         parts.push(format!("times {} each year", 1.0 + over_time.trend_per_year));
@@ -117,7 +115,7 @@ fn capacity(prepared: &Prepared) -> Option<String> {
             "varies by chance from year to year, sd {sd} of its mean (lognormal, each patch for itself)"
         ));
     }
-    Some(parts.join("; "))
+    parts
 }
 
 /// A share in per cent, without zeros at the end.
