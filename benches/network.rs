@@ -1,7 +1,7 @@
 //! Linking a landscape of points under an exponential kernel, beside the bare neighbour search that it stands on.
 
 use divan::{Bencher, black_box};
-use eyot::landscape::{Crs, Landscape, Patch, Start};
+use eyot::landscape::{CapacityOverTime, Crs, Landscape, Patch, Start};
 use eyot::mistake::Place;
 use eyot::network::kernel::{Exponential, Scale};
 use eyot::network::{DispersalTable, Distances, Kernel, KernelDispersal, Movement, Network, Settlement, Structure};
@@ -41,7 +41,14 @@ fn landscape(n: usize) -> Landscape {
         })
         .collect();
     let landscape_area_ha = patches.iter().map(|patch| patch.area_ha).sum();
-    Landscape { patches, crs: Crs::Metres, crs_member: None, landscape_area_ha, between_centroids: true }
+    Landscape {
+        patches,
+        crs: Crs::Metres,
+        crs_member: None,
+        landscape_area_ha,
+        between_centroids: true,
+        capacity_over_time: CapacityOverTime::default(),
+    }
 }
 
 struct Centroids<'a> {

@@ -11,7 +11,7 @@ use stats_alloc::{INSTRUMENTED_SYSTEM, Region, StatsAlloc};
 #[global_allocator]
 static ALLOCATOR: &StatsAlloc<System> = &INSTRUMENTED_SYSTEM;
 
-/// Every feature of the loop at once: stages, correlated weather, dispersal, density dependence, a ceiling elsewhere.
+/// Every feature of the loop at once: correlated weather, catastrophes, changing capacity, dispersal, a life history.
 fn study(horizon: u32, life_history: &str) -> Prepared {
     let folder = tempfile::tempdir().expect("a temporary folder can be made");
     let features: Vec<String> = (0..12)
@@ -39,7 +39,7 @@ fn study(horizon: u32, life_history: &str) -> Prepared {
         id = "patch"
         crs = "metres"
         area = {{ property = "area" }}
-        capacity = {{ property = "k" }}
+        capacity = {{ property = "k", trend_per_year = -0.001, variation = 0.2 }}
         start = {{ share_of_capacity = 0.8 }}
         {life_history}
         [environment]
@@ -48,6 +48,20 @@ fn study(horizon: u32, life_history: &str) -> Prepared {
         [dispersal]
         kernel = {{ shape = "exponential", mean_km = 1.0 }}
         settlement = "shared"
+        [[catastrophe]]
+        name = "storm"
+        yearly_probability = 0.1
+        strikes = {{ radius_km = 1.5 }}
+        lasts = 2
+        survival = 0.7
+        capacity = 0.5
+        [[catastrophe]]
+        name = "disease"
+        yearly_probability = 0.05
+        years = [2]
+        strikes = "each patch"
+        lasts = {{ chance_of_another_year = 0.5 }}
+        fecundity = 0.4
         "#
     );
     fs::write(folder.path().join("study.toml"), text).expect("a temporary file can be written");

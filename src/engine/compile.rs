@@ -1,10 +1,11 @@
 //! From what was read to arrays.
 
+use super::capacity::ChangingCapacity;
 use super::model::{Crowding, Model, Threshold};
 use super::movement::Movement;
 use super::realise::Rates;
 use crate::demography::{LifeHistory, ceiling_cut, split_total};
-use crate::environment::EnvironmentTable;
+use crate::environment::{Catastrophe, Catastrophes, EnvironmentTable};
 use crate::landscape::{Landscape, Patch, Start};
 use crate::mistake::Mistake;
 use crate::network::Network;
@@ -74,6 +75,12 @@ fn cut_warning(cut: &[&Patch]) -> Option<Mistake> {
     Some(Mistake::new(first.place.clone(), found, "start numbers cut to the whole part of capacity"))
 }
 
+/// How years differ: the weather, and what strikes now and then.
+pub(super) struct Years<'a> {
+    pub(super) environment: &'a EnvironmentTable,
+    pub(super) catastrophes: &'a [Catastrophe],
+}
+
 /// Compiles a study that has been read and checked.
 ///
 /// # Errors
@@ -82,7 +89,7 @@ pub(super) fn compile(
     settings: &Settings,
     landscape: &Landscape,
     life_history: &LifeHistory,
-    environment: &EnvironmentTable,
+    years: &Years<'_>,
     network: &Network,
     start: Vec<u32>,
     counted_stages: Vec<usize>,
@@ -95,7 +102,9 @@ pub(super) fn compile(
         seed: settings.seed,
         horizon: settings.horizon,
         n_stages,
-        rates: Rates::compile(&life_history.rates, environment, &centroids, &patch_keys)?,
+        rates: Rates::compile(&life_history.rates, years.environment, &centroids, &patch_keys)?,
+        catastrophes: Catastrophes::compile(years.catastrophes, &centroids, &patch_keys),
+        changing_capacity: ChangingCapacity::compile(landscape),
         patch_keys,
         start,
         capacity: landscape.patches.iter().map(|patch| patch.capacity).collect(),

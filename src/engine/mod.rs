@@ -3,6 +3,7 @@
 //! [`prepare`] alone meets the study: it reads, checks, links and compiles. What it hands on, a [`Model`], is valid: the
 //! yearly loop has no error path, no strings, no files and no geometry.
 
+mod capacity;
 mod compile;
 mod full_or_empty;
 mod model;

@@ -2,11 +2,13 @@
 
 use std::sync::Arc;
 
+use super::capacity::ChangingCapacity;
 use super::movement::Movement;
 use super::occupancy::Turnovers;
 use super::realise::Rates;
 use crate::demography::density::Curve;
 use crate::demography::local::LocalModel;
+use crate::environment::Catastrophes;
 
 /// The threshold of quasi-extinction.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -36,8 +38,10 @@ pub struct Model {
     pub(super) patch_keys: Vec<u64>,
     /// individuals at census 0, `[patch][stage]`
     pub(super) start: Vec<u32>,
-    /// carrying capacity by patch
+    /// carrying capacity by patch at census 0
     pub(super) capacity: Vec<f64>,
+    pub(super) changing_capacity: Option<ChangingCapacity>,
+    pub(super) catastrophes: Option<Catastrophes>,
     /// what an individual of each stage counts toward capacity
     pub(super) toward_capacity: Vec<f64>,
     pub(super) local: Arc<dyn LocalModel>,

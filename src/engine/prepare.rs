@@ -2,11 +2,11 @@
 
 use std::path::Path;
 
-use super::compile::{compile, start_counts};
+use super::compile::{Years, compile, start_counts};
 use super::full_or_empty::{self, Linked};
 use super::model::Model;
 use crate::demography::LifeHistory;
-use crate::environment::{Correlation, EnvironmentTable};
+use crate::environment::{Catastrophe, Correlation, EnvironmentTable};
 use crate::landscape::{Landscape, LandscapeTable, Neighbours};
 use crate::mistake::{Checked, Failure, Mistake, Place};
 use crate::network::{DispersalTable, Movement, Network};
@@ -38,6 +38,8 @@ pub struct Prepared {
     pub life_history: LifeHistory,
     /// how years vary
     pub environment: EnvironmentTable,
+    /// what strikes now and then
+    pub catastrophes: Vec<Catastrophe>,
     /// the compiled model
     pub model: Model,
     /// the files that went into it
@@ -69,6 +71,8 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         Some(table) => EnvironmentTable::read(table),
         None => Some(EnvironmentTable::default()).filter(|_| !root.has("environment")),
     };
+    let (kind, horizon) = (life_history.as_ref().map(|read| read.kind), settings.as_ref().map(|read| read.horizon));
+    let catastrophes = Catastrophe::read_all(&root, kind, horizon);
     let dispersal = root.table("dispersal").map(if full_or_empty {
         DispersalTable::read_for_occupancy
     } else {
@@ -104,12 +108,14 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     });
     let (settings, life_history, environment, landscape) = (settings?, life_history?, environment?, landscape?);
     let (counted_stages, start, linked) = (counted_stages?, start?, linked?);
+    let catastrophes = catastrophes?;
     let Linked { network, turnovers, n_left_out } = linked;
     let dispersal = dispersal.flatten();
     if !document.is_clean() {
         return None;
     }
-    let model = compile(&settings, &landscape, &life_history, &environment, &network, start, counted_stages);
+    let years = Years { environment: &environment, catastrophes: &catastrophes };
+    let model = compile(&settings, &landscape, &life_history, &years, &network, start, counted_stages);
     let model = match model {
         Ok(model) => Model { turnovers, ..model },
         Err(reason) => {
@@ -134,6 +140,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         n_left_out,
         life_history,
         environment,
+        catastrophes,
         model,
         inputs: document.inputs(),
     })

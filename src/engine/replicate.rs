@@ -4,7 +4,7 @@ use super::model::Model;
 use super::realise;
 use super::tally::{PatchTally, Record, Tallies};
 use super::year;
-use crate::environment::WeatherState;
+use crate::environment::{CatastropheState, Catastrophes, WeatherState};
 use crate::random::ReplicateKey;
 
 /// One patch's numbers within one replicate.
@@ -59,6 +59,9 @@ pub(super) struct State {
     /// arrivals of the year, `[patch][stage]`, all 0 between years
     pub(super) arrivals: Vec<u32>,
     pub(super) weather: Option<WeatherState>,
+    pub(super) catastrophes: Option<CatastropheState>,
+    /// the year's capacity by patch
+    pub(super) capacity: Vec<f64>,
     /// one patch's realised rates; those that do not vary never change
     pub(super) rates: Vec<f64>,
     /// where patches are full or empty, the year's connectivity of each
@@ -82,6 +85,8 @@ impl State {
             counts: vec![0; cells],
             arrivals: vec![0; cells],
             weather: model.rates.weather_state(),
+            catastrophes: model.catastrophes.as_ref().map(Catastrophes::state),
+            capacity: model.capacity.clone(),
             rates: model.rates.means().to_vec(),
             connectivity: model.turnovers.as_ref().map_or_else(Vec::new, |_| vec![0.0; model.n_patches()]),
             scratch: vec![0; model.n_stages],

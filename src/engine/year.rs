@@ -1,5 +1,6 @@
 //! One year of one replicate, from a census to the next.
 
+use super::capacity;
 use super::model::Model;
 use super::replicate::State;
 use crate::demography::local::Pressure;
@@ -10,7 +11,7 @@ use crate::random::{Purpose, YearKey, remove_at_random};
 /// Habitat changes (step 1) and management (step 5) have no part yet: the landscape is as is.
 pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     let key = state.replicate.year(year);
-    weather(model, state);
+    weather(model, state, key, year);
     if let Some(turnovers) = &model.turnovers {
         turnovers.step(model, state, key);
     } else {
@@ -21,9 +22,13 @@ pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     census(model, state, year + 1);
 }
 
-/// Step 2: the year's deviates.
-fn weather(model: &Model, state: &mut State) {
+/// Step 2: the year's deviates and catastrophes, and the capacity that they leave.
+fn weather(model: &Model, state: &mut State, key: YearKey, year: u32) {
     model.rates.advance(&mut state.weather);
+    if let (Some(catastrophes), Some(drawn)) = (&model.catastrophes, &mut state.catastrophes) {
+        catastrophes.draw(drawn, key, year);
+    }
+    capacity::of_the_year(model, state, key, year);
 }
 
 /// Step 3: births, and survival with advance, from the numbers of the last census.
@@ -34,7 +39,12 @@ fn local_dynamics(model: &Model, state: &mut State, key: YearKey) {
         if counts.iter().all(|count| *count == 0) {
             continue;
         }
-        let pressure = pressure(model, patch, counts);
+        let mut pressure = pressure(model, state.capacity[patch], counts);
+        if let Some(catastrophes) = &state.catastrophes {
+            let left = catastrophes.left(patch);
+            pressure.survival *= left.survival;
+            pressure.fecundity *= left.fecundity;
+        }
         model.rates.realise(state.weather.as_ref(), patch, &mut state.rates);
         let place = key.patch(model.patch_keys[patch]);
         state.saturated |= model.local.step(counts, &state.rates, pressure, place, &mut state.scratch);
@@ -42,8 +52,7 @@ fn local_dynamics(model: &Model, state: &mut State, key: YearKey) {
 }
 
 /// Where there is no capacity the multiplier of the rates acted on is 0, under every form.
-fn pressure(model: &Model, patch: usize, counts: &[u32]) -> Pressure {
-    let capacity = model.capacity[patch];
+fn pressure(model: &Model, capacity: f64, counts: &[u32]) -> Pressure {
     let crowding = &model.crowding;
     let multiplier = match &crowding.curve {
         _ if capacity <= 0.0 => 0.0,
@@ -79,7 +88,7 @@ fn ceiling(model: &Model, state: &mut State, key: YearKey) {
     let stages = model.n_stages;
     for patch in 0..model.n_patches() {
         let counts = &mut state.counts[patch * stages..(patch + 1) * stages];
-        let capacity = model.capacity[patch];
+        let capacity = state.capacity[patch];
         if capacity <= 0.0 {
             counts.fill(0);
         } else if model.ceiling {

@@ -4,6 +4,7 @@
 //! (`geojson`, `coordinates`), mended where they cross themselves (`repair`), measured in one plane (`plane`, `measure`),
 //! with the values that properties and tables give (`values`). [`Neighbours`] then finds what lies near what.
 
+mod capacity_years;
 mod coordinates;
 mod degrees;
 mod edges;
@@ -25,6 +26,7 @@ mod table;
 mod tables;
 mod values;
 
+pub use capacity_years::CapacityOverTime;
 pub use glance::{Glance, Property, Values};
 pub use neighbours::Neighbours;
 pub use patch::{Crs, Landscape, Patch, Start};

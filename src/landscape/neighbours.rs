@@ -152,7 +152,7 @@ mod tests {
     use proptest::prelude::*;
 
     use super::*;
-    use crate::landscape::{Crs, Patch, Start};
+    use crate::landscape::{CapacityOverTime, Crs, Patch, Start};
     use crate::mistake::Place;
 
     /// A square of a half-width around a centre, a point where that is 0; kilometres.
@@ -174,7 +174,14 @@ mod tests {
 
     fn landscape(squares: &[([f64; 2], f64)], between_centroids: bool) -> Landscape {
         let patches = squares.iter().enumerate().map(|(index, (centre, half))| square(index, *centre, *half)).collect();
-        Landscape { patches, crs: Crs::Metres, crs_member: None, landscape_area_ha: 1.0, between_centroids }
+        Landscape {
+            patches,
+            crs: Crs::Metres,
+            crs_member: None,
+            landscape_area_ha: 1.0,
+            between_centroids,
+            capacity_over_time: CapacityOverTime::default(),
+        }
     }
 
     fn squares() -> impl Strategy<Value = Vec<([f64; 2], f64)>> {

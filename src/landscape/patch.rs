@@ -2,6 +2,7 @@
 
 use geo::{Geometry, MultiPolygon};
 
+use super::capacity_years::CapacityOverTime;
 use crate::mistake::Place;
 
 /// The coordinates of the input.
@@ -31,7 +32,7 @@ pub struct Patch {
     pub name: String,
     /// area in hectares, rounded to 0.01 m2
     pub area_ha: f64,
-    /// carrying capacity in individuals, 0 or above
+    /// carrying capacity in individuals at census 0, 0 or above
     pub capacity: f64,
     /// the individuals at census 0
     pub start: Start,
@@ -60,6 +61,8 @@ pub struct Landscape {
     pub landscape_area_ha: f64,
     /// whether distances run between centroids instead of nearest edges
     pub between_centroids: bool,
+    /// how capacities change from year to year
+    pub capacity_over_time: CapacityOverTime,
 }
 
 impl Landscape {

@@ -1,10 +1,12 @@
 //! The landscape of a study, from the files that its table names.
 
+use std::collections::BTreeMap;
 use std::path::Path;
 
 use geo::{Area, Geometry};
 use rayon::prelude::*;
 
+use super::capacity_years::{CapacityOverTime, Course};
 use super::findings::Findings;
 use super::geojson::{self, Feature};
 use super::ground::{self, Ground};
@@ -54,6 +56,7 @@ fn read(
     }
     let grounds = ground::mend_all(&features, file, table.crs, findings);
     let measured = measure_all(&features, &grounds, file, table.crs, findings)?;
+    let courses = courses_by_name(&features, &values);
     let patches: Option<Vec<Patch>> = features
         .into_iter()
         .zip(grounds)
@@ -75,8 +78,22 @@ fn read(
         crs_member: collection.crs_member,
         landscape_area_ha: landscape_area_ha(table, patches_ha, findings),
         between_centroids: table.between_centroids,
+        capacity_over_time: over_time(table, &patches, &courses),
         patches,
     })
+}
+
+/// The capacities that a table states by years, under the names of the patches.
+fn courses_by_name(features: &[Feature], values: &Values) -> BTreeMap<String, Course> {
+    let named = |(feature, course): (&Feature, &Option<Course>)| Some((feature.name.clone()?, course.clone()?));
+    features.iter().zip(&values.courses).filter_map(named).collect()
+}
+
+fn over_time(table: &LandscapeTable, patches: &[Patch], courses: &BTreeMap<String, Course>) -> CapacityOverTime {
+    let number = |said: &Option<Said<f64>>| said.as_ref().map_or(0.0, |said| said.value);
+    let changes = &table.capacity_changes;
+    let courses = patches.iter().filter_map(|patch| courses.get(&patch.name).cloned()).collect();
+    CapacityOverTime::new(number(&changes.trend_per_year), number(&changes.variation), courses)
 }
 
 fn patch(

@@ -2,7 +2,7 @@
 
 use super::patch::Crs;
 use crate::mistake::Place;
-use crate::study::{Item, NOT_NEGATIVE, POSITIVE, Said, Table};
+use crate::study::{Item, NOT_NEGATIVE, Numbers, POSITIVE, Said, Table};
 
 /// What the study says about its landscape. Nothing of the patch file has been read yet.
 #[derive(Debug, Clone)]
@@ -19,6 +19,8 @@ pub struct LandscapeTable {
     pub area: Option<Said<String>>,
     /// where carrying capacities come from
     pub capacity: CapacityFrom,
+    /// how carrying capacities change over the years
+    pub capacity_changes: CapacityChanges,
     /// where the individuals at census 0 come from
     pub start: StartFrom,
     /// area of the whole landscape in hectares, if the study states one
@@ -37,10 +39,19 @@ pub enum CapacityFrom {
     },
     /// a property of the patches
     Property(Said<String>),
-    /// a CSV table with the header `patch,capacity`
+    /// a CSV table with the header `patch,capacity`, or `patch,year,capacity`
     Table(Said<String>),
     /// patches are full or empty: each holds one
     FullOrEmpty(Place),
+}
+
+/// What the study says about changes of all capacities alike.
+#[derive(Debug, Clone, Default)]
+pub struct CapacityChanges {
+    /// the share by which they change a year
+    pub trend_per_year: Option<Said<f64>>,
+    /// their standard deviation over years as a share of the mean
+    pub variation: Option<Said<f64>>,
 }
 
 /// Where the individuals at census 0 come from.
@@ -69,12 +80,16 @@ impl LandscapeTable {
     /// Reads the table of a study whose patches are full or empty: without capacities, and a start that says which are
     /// occupied. `None` as in [`LandscapeTable::read`].
     pub fn read_full_or_empty(table: Table<'_>) -> Option<Self> {
-        let capacity = no_capacity(&table);
+        let capacity = no_capacity(&table).map(|none| (none, CapacityChanges::default()));
         let start = required(&table, "start", "{ property = \"occupied_2024\" }", read_occupied);
         Self::read_with(table, capacity, start)
     }
 
-    fn read_with(table: Table<'_>, capacity: Option<CapacityFrom>, start: Option<StartFrom>) -> Option<Self> {
+    fn read_with(
+        table: Table<'_>,
+        capacity: Option<(CapacityFrom, CapacityChanges)>,
+        start: Option<StartFrom>,
+    ) -> Option<Self> {
         let patches = table.text("patches");
         if !table.has("patches") {
             table.missing("patches", "the path of a GeoJSON file of patches");
@@ -92,6 +107,7 @@ impl LandscapeTable {
             table.has("landscape_area_ha") == landscape_area_ha.is_some(),
         ];
         table.finish();
+        let (capacity, capacity_changes) = capacity.unzip();
         let read = Self {
             patches: patches?,
             id,
@@ -99,6 +115,7 @@ impl LandscapeTable {
             between_centroids: distance.is_some_and(|said| said.value),
             area,
             capacity: capacity?,
+            capacity_changes: capacity_changes?,
             start: start?,
             landscape_area_ha,
         };
@@ -144,7 +161,7 @@ fn inner_table<'d>(table: &Table<'d>, key: &str, expected: &str) -> Option<Table
     }
 }
 
-fn read_capacity(table: Table<'_>) -> Option<CapacityFrom> {
+fn read_capacity(table: Table<'_>) -> Option<(CapacityFrom, CapacityChanges)> {
     let per_hectare = table.number("per_hectare", POSITIVE);
     let quality = table.text("quality");
     let property = table.text("property");
@@ -154,12 +171,25 @@ fn read_capacity(table: Table<'_>) -> Option<CapacityFrom> {
         table.mistake(format!("{} without per_hectare", table.address("quality")), "quality scales per_hectare alone");
     }
     let quality_is_right = table.has("quality") == quality.is_some();
+    let changes = read_changes(&table);
     table.finish();
     if !sound || !quality_is_right {
         return None;
     }
     let per_hectare = per_hectare.map(|per_hectare| CapacityFrom::PerHectare { per_hectare, quality });
-    per_hectare.or(property.map(CapacityFrom::Property)).or(path.map(CapacityFrom::Table))
+    let from = per_hectare.or(property.map(CapacityFrom::Property)).or(path.map(CapacityFrom::Table));
+    from.zip(changes)
+}
+
+/// A yearly trend that at most doubles capacity, and does not take it all in one year.
+const TRENDS: Numbers = Numbers { low: -1.0, high: 1.0, above_low: true, below_high: false };
+
+fn read_changes(table: &Table<'_>) -> Option<CapacityChanges> {
+    let trend_per_year = table.number("trend_per_year", TRENDS);
+    let variation = table.number("variation", NOT_NEGATIVE);
+    let are_right =
+        table.has("trend_per_year") == trend_per_year.is_some() && table.has("variation") == variation.is_some();
+    are_right.then_some(CapacityChanges { trend_per_year, variation })
 }
 
 fn read_start(table: Table<'_>) -> Option<StartFrom> {

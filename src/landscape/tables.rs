@@ -2,15 +2,18 @@
 
 use std::collections::{BTreeMap, BTreeSet};
 
+use super::capacity_years::Course;
 use super::findings::Findings;
 use super::names::name_of_cell;
 use super::occupied;
 use crate::mistake::{Mistake, nearest_word};
-use crate::study::{CsvRow, CsvTable, Numbers, Said};
+use crate::study::{CsvRow, CsvTable, NOT_NEGATIVE, Numbers, Said};
 
 const PATCH: &str = "patch";
 const COUNT: &str = "count";
 const OCCUPIED: &str = "occupied";
+const CAPACITY: &str = "capacity";
+const YEAR: &str = "year";
 
 /// The individuals that a table gives to a patch.
 #[derive(Debug, Clone, PartialEq)]
@@ -24,22 +27,36 @@ pub(super) enum Counts {
 /// The names of all patches that have one, by position among the features.
 pub(super) type Names<'n> = BTreeMap<&'n str, usize>;
 
-/// Reads a table `patch,capacity`: a number for each of `features` features; `None` where a mistake has been noted.
+/// Reads a table `patch,capacity` or `patch,year,capacity`: the capacities of each of `features` features by years, those
+/// without years being of year 0; `None` where a mistake has been noted.
 pub(super) fn capacities(
     said: &Said<String>,
     names: &Names<'_>,
     features: usize,
-    admitted: Numbers,
     findings: &Findings<'_>,
-) -> Vec<Option<f64>> {
-    let mut capacities = vec![None; features];
-    let Some(table) = Rows::read(said, names, findings) else { return capacities };
-    let Some(column) = table.column("capacity", findings) else { return capacities };
-    table.refuse_other_columns(&["capacity"], findings);
+) -> Vec<Option<Course>> {
+    let mut courses = vec![None; features];
+    let Some(table) = open(said, findings) else { return courses };
+    let by_years = table.header.iter().any(|column| column == YEAR);
+    let repeats = if by_years { Repeats::Lawful } else { Repeats::Refused };
+    let Some(table) = Rows::of(table, said, names, repeats, findings) else { return courses };
+    let expected: &[&str] = if by_years { &[YEAR, CAPACITY] } else { &[CAPACITY] };
+    let Some(capacity) = table.column(CAPACITY, findings) else { return courses };
+    table.refuse_other_columns(expected, findings);
+    let year = if by_years { table.column(YEAR, findings) } else { None };
+    let mut spoilt = vec![false; features];
     for (feature, row) in &table.rows {
-        capacities[*feature] = table.number(row, column, admitted, findings);
+        let at = match year {
+            Some(column) => table.year(row, column, courses[*feature].as_ref(), findings),
+            None => Some(0),
+        };
+        let Some(point) = at.zip(table.number(row, capacity, NOT_NEGATIVE, findings)) else {
+            spoilt[*feature] = true;
+            continue;
+        };
+        courses[*feature].get_or_insert_with(Course::new).push(point);
     }
-    capacities
+    courses.into_iter().zip(spoilt).map(|(course, spoilt)| course.filter(|_| !spoilt)).collect()
 }
 
 /// Reads a table `patch,count`, or `patch` and a column for every stage: the counts of each of `features` features;
@@ -52,7 +69,8 @@ pub(super) fn counts(
     findings: &Findings<'_>,
 ) -> Vec<Option<Counts>> {
     let mut counts = vec![None; features];
-    let Some(table) = Rows::read(said, names, findings) else { return counts };
+    let Some(table) = open(said, findings) else { return counts };
+    let Some(table) = Rows::of(table, said, names, Repeats::Refused, findings) else { return counts };
     let has = |name: &str| table.table.header.iter().any(|column| column == name);
     let totals = has(COUNT) && !stages.iter().any(|stage| stage == COUNT);
     let expected: Vec<&str> =
@@ -64,7 +82,10 @@ pub(super) fn counts(
         counts[*feature] = if expected == [COUNT] {
             table.number(row, columns[0], COUNTS, findings).map(Counts::Total)
         } else {
-            let by_stage: Vec<_> = columns.iter().map(|column| table.whole(row, *column, findings)).collect();
+            let by_stage: Vec<_> = columns
+                .iter()
+                .map(|column| table.whole(row, *column, "a whole number of individuals", findings))
+                .collect();
             by_stage.into_iter().collect::<Option<_>>().map(Counts::ByStage)
         };
     }
@@ -79,7 +100,8 @@ pub(super) fn occupied(
     findings: &Findings<'_>,
 ) -> Vec<Option<bool>> {
     let mut occupied = vec![None; features];
-    let Some(table) = Rows::read(said, names, findings) else { return occupied };
+    let table = open(said, findings).and_then(|table| Rows::of(table, said, names, Repeats::Refused, findings));
+    let Some(table) = table else { return occupied };
     let Some(column) = table.column(OCCUPIED, findings) else { return occupied };
     table.refuse_other_columns(&[OCCUPIED], findings);
     for (feature, row) in &table.rows {
@@ -103,12 +125,29 @@ struct Rows {
     rows: Vec<(usize, CsvRow)>,
 }
 
+/// Whether a patch may have more than one row.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Repeats {
+    Lawful,
+    Refused,
+}
+
+fn open(said: &Said<String>, findings: &Findings<'_>) -> Option<CsvTable> {
+    let table = CsvTable::read(findings.document, said);
+    if table.is_none() {
+        findings.noted();
+    }
+    table
+}
+
 impl Rows {
-    fn read(said: &Said<String>, names: &Names<'_>, findings: &Findings<'_>) -> Option<Self> {
-        let Some(mut table) = CsvTable::read(findings.document, said) else {
-            findings.noted();
-            return None;
-        };
+    fn of(
+        mut table: CsvTable,
+        said: &Said<String>,
+        names: &Names<'_>,
+        repeats: Repeats,
+        findings: &Findings<'_>,
+    ) -> Option<Self> {
         let patch = column(&table, PATCH, findings)?;
         let mut rows = Vec::with_capacity(table.rows.len());
         let mut lines: BTreeMap<usize, usize> = BTreeMap::new();
@@ -121,7 +160,7 @@ impl Rows {
                 findings.mistake("unknown patch", mistake.advise(format!("write {near}, or take the row out")));
                 continue;
             };
-            if let Some(earlier) = lines.insert(*feature, row.line) {
+            if let Some(earlier) = lines.insert(*feature, row.line).filter(|_| repeats == Repeats::Refused) {
                 let found = format!("patch = {cell}, which line {earlier} has already");
                 findings.mistake("repeated row", Mistake::new(table.place(row.line), found, "one row for every patch"));
             } else {
@@ -159,7 +198,20 @@ impl Rows {
         self.table.number_or(row, column, admitted, |mistake| findings.mistake("cell", mistake))
     }
 
-    fn whole(&self, row: &CsvRow, column: usize, findings: &Findings<'_>) -> Option<u32> {
+    /// The year of a row, if it is one and comes after those that the patch has already.
+    fn year(&self, row: &CsvRow, column: usize, course: Option<&Course>, findings: &Findings<'_>) -> Option<u32> {
+        let year = self.whole(row, column, "a whole year, counted from census 0", findings)?;
+        let last = course.and_then(|course| course.last()).map(|(last, _)| *last);
+        if let Some(last) = last.filter(|last| *last >= year) {
+            let found = format!("{YEAR} = {year} after {YEAR} = {last} of the same patch");
+            let mistake = Mistake::new(self.table.place(row.line), found, "the years of a patch in order, each once");
+            findings.mistake("year", mistake);
+            return None;
+        }
+        Some(year)
+    }
+
+    fn whole(&self, row: &CsvRow, column: usize, expected: &str, findings: &Findings<'_>) -> Option<u32> {
         let number = self.number(row, column, COUNTS, findings)?;
         if number.fract() == 0.0 {
             #[expect(
@@ -170,7 +222,7 @@ impl Rows {
             return Some(number as u32);
         }
         let found = format!("{} = {}", self.table.header[column], row.cells[column]);
-        findings.mistake("cell", Mistake::new(self.table.place(row.line), found, "a whole number of individuals"));
+        findings.mistake("cell", Mistake::new(self.table.place(row.line), found, expected));
         None
     }
 }

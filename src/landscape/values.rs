@@ -2,6 +2,7 @@
 
 use std::path::Path;
 
+use super::capacity_years::{Course, at};
 use super::findings::Findings;
 use super::geojson::Feature;
 use super::occupied;
@@ -21,6 +22,8 @@ pub(super) struct Values {
     pub(super) areas_ha: Vec<Option<f64>>,
     /// capacities, which may hang on the area
     pub(super) capacities: Vec<Option<Capacity>>,
+    /// capacities by years; empty if no table states them
+    pub(super) courses: Vec<Option<Course>>,
     /// start numbers
     pub(super) starts: Vec<Option<Start>>,
 }
@@ -54,9 +57,11 @@ impl Values {
         findings: &Findings<'_>,
     ) -> Self {
         let source = Source { features, file, findings };
+        let (capacities, courses) = source.capacities(table);
         Self {
             areas_ha: table.area.as_ref().map_or_else(Vec::new, |area| source.numbers(area, AREAS_HA)),
-            capacities: source.capacities(&table.capacity),
+            capacities,
+            courses,
             starts: source.starts(&table.start, stages),
         }
     }
@@ -79,8 +84,9 @@ impl Source<'_> {
         self.features.iter().enumerate().map(|(position, feature)| Some((feature.name.as_deref()?, position))).collect()
     }
 
-    fn capacities(&self, from: &CapacityFrom) -> Vec<Option<Capacity>> {
-        match from {
+    /// The capacities at census 0 and, where a table states them, by years.
+    fn capacities(&self, table: &LandscapeTable) -> (Vec<Option<Capacity>>, Vec<Option<Course>>) {
+        let capacities = match &table.capacity {
             CapacityFrom::PerHectare { per_hectare, quality } => {
                 let qualities = match quality {
                     Some(property) => {
@@ -98,11 +104,25 @@ impl Source<'_> {
                 capacities.into_iter().map(|capacity| capacity.map(Capacity::Individuals)).collect()
             }
             CapacityFrom::Table(path) => {
-                let Some(names) = self.names() else { return vec![None; self.features.len()] };
-                let capacities = tables::capacities(path, &names, self.features.len(), NOT_NEGATIVE, self.findings);
-                capacities.into_iter().map(|capacity| capacity.map(Capacity::Individuals)).collect()
+                let n = self.features.len();
+                let Some(names) = self.names() else { return (vec![None; n], vec![None; n]) };
+                let courses = tables::capacities(path, &names, self.features.len(), self.findings);
+                self.refuse_trend_beside_years(&courses, table);
+                let at_start =
+                    |course: &Option<Course>| course.as_ref().map(|course| Capacity::Individuals(at(course, 0)));
+                return (courses.iter().map(at_start).collect(), courses);
             }
             CapacityFrom::FullOrEmpty(_) => vec![Some(Capacity::Individuals(1.0)); self.features.len()],
+        };
+        (capacities, Vec::new())
+    }
+
+    /// A table by years says already how capacities change.
+    fn refuse_trend_beside_years(&self, courses: &[Option<Course>], table: &LandscapeTable) {
+        let Some(trend) = &table.capacity_changes.trend_per_year else { return };
+        if courses.iter().flatten().any(|course| course.len() > 1) {
+            let mistake = trend.mistake("no trend beside a table with years, which says how capacities change");
+            self.findings.mistake("trend", mistake.advise("take the trend out, or the years out of the table"));
         }
     }
 

@@ -5,7 +5,7 @@ use serde_json::json;
 
 use super::Outcome;
 use crate::engine::{PatchTally, Record, Tallies};
-use crate::landscape::{Crs, Landscape, Patch, Start};
+use crate::landscape::{CapacityOverTime, Crs, Landscape, Patch, Start};
 use crate::mistake::Place;
 use crate::network::{Capacity, Connectivity, Graph, Link, Network, Structure};
 use crate::study::{QuasiExtinction, Said};
@@ -28,6 +28,7 @@ pub(crate) fn landscape() -> Landscape {
         crs_member: Some(json!({"type": "name", "properties": {"name": "urn:ogc:def:crs:OGC:1.3:CRS84"}})),
         landscape_area_ha: 19.5,
         between_centroids: false,
+        capacity_over_time: CapacityOverTime::default(),
     }
 }
 

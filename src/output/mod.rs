@@ -13,6 +13,7 @@ mod occupancy;
 mod terminal;
 #[cfg(test)]
 mod tests;
+mod threats;
 mod understood;
 mod words;
 

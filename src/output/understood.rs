@@ -4,6 +4,7 @@ use serde::Serialize;
 
 use super::life_words;
 use super::terminal::{Side, lines};
+use super::threats::Threats;
 use super::words::{amount, counted, grouped};
 use crate::demography::{Census, LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
@@ -28,6 +29,7 @@ pub struct Understood {
     network: Option<Network>,
     species: Species,
     weather: String,
+    threats: Option<Threats>,
     warnings: Vec<String>,
     #[serde(skip)]
     head: String,
@@ -110,6 +112,7 @@ impl Understood {
                 ..Species::new(&prepared.life_history, settings.generation_years)
             },
             weather: weather(prepared),
+            threats: Threats::new(prepared),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
             head: head(settings),
         }
@@ -125,13 +128,14 @@ impl Understood {
 
     /// For the terminal.
     pub fn text(&self) -> String {
-        let parts = [
+        let mut parts = vec![
             self.head.clone(),
             self.landscape.text(),
             self.network_text(),
             self.species.text(),
             format!("{}\n", self.weather),
         ];
+        parts.extend(self.threats.as_ref().map(Threats::text));
         parts.join("\n")
     }
 

@@ -27,5 +27,5 @@ pub use multinomial::multinomial;
 pub use normal::standard_normal;
 pub use poisson::poisson;
 pub use purpose::Purpose;
-pub use streams::{PlaceKey, ReplicateKey, Stream, YearKey, patch_key};
+pub use streams::{PlaceKey, ReplicateKey, Stream, YearKey, name_index, patch_key};
 pub use thinning::remove_at_random;

@@ -22,6 +22,12 @@ pub enum Purpose {
     Destinations(u32),
     /// who goes where there are too many
     Surplus,
+    /// whether a catastrophe strikes; its index comes from its name
+    Struck(u32),
+    /// the patch at which a catastrophe begins
+    Origin(u32),
+    /// a patch's own capacity of the year
+    OwnCapacity,
     /// which females breed where males are too few for all
     Mating,
     /// how many of the young are females
@@ -45,6 +51,9 @@ impl Purpose {
             Self::Destinations(stage) => (6, stage),
             Self::Surplus => (7, 0),
             Self::Advance(stage) => (8, stage),
+            Self::Struck(catastrophe) => (20, catastrophe),
+            Self::Origin(catastrophe) => (21, catastrophe),
+            Self::OwnCapacity => (22, 0),
             Self::Mating => (30, 0),
             Self::SexOfYoung => (31, 0),
             Self::Litter => (32, 0),

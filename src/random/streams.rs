@@ -108,6 +108,12 @@ pub fn patch_key(name: &str) -> u64 {
     mix(fnv_1a(name.as_bytes()))
 }
 
+/// The index by which something with a name of its own enters [`Purpose`]s: the upper half of the hash of the name, so that
+/// it does not hang on what else there is.
+pub fn name_index(name: &str) -> u32 {
+    (patch_key(name) >> 32) as u32
+}
+
 /// The 64-bit hash of Fowler, Noll & Vo, in the variant 1a.
 fn fnv_1a(bytes: &[u8]) -> u64 {
     bytes.iter().fold(0xcbf2_9ce4_8422_2325, |hash, byte| (hash ^ u64::from(*byte)).wrapping_mul(0x0000_0100_0000_01b3))

@@ -6,6 +6,8 @@
 //! one side, the count is held against the binomial distribution instead, two-sided tail at least 1e-4.
 
 mod branching;
+mod capacity;
+mod catastrophes;
 mod chains;
 mod lifehistory;
 mod moments;

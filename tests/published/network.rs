@@ -5,7 +5,7 @@
 use std::f64::consts::{PI, TAU};
 use std::path::Path;
 
-use eyot::landscape::{Crs, Landscape, Patch, Start};
+use eyot::landscape::{CapacityOverTime, Crs, Landscape, Patch, Start};
 use eyot::mistake::Place;
 use eyot::network::kernel::{Exponential, ExponentialPower, Gaussian, Lognormal, Scale, TwoDt};
 use eyot::network::{
@@ -71,7 +71,14 @@ fn rectangle(name: &str, corner: [f64; 2], sides: [f64; 2]) -> Patch {
 
 fn landscape(patches: Vec<Patch>) -> Landscape {
     let landscape_area_ha = patches.iter().map(|patch| patch.area_ha).sum();
-    Landscape { patches, crs: Crs::Metres, crs_member: None, landscape_area_ha, between_centroids: true }
+    Landscape {
+        patches,
+        crs: Crs::Metres,
+        crs_member: None,
+        landscape_area_ha,
+        between_centroids: true,
+        capacity_over_time: CapacityOverTime::default(),
+    }
 }
 
 /// Points in a square with areas of 1 to 10 ha, from a plain congruential generator, so that nothing else moves them.
