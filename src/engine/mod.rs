@@ -4,6 +4,7 @@
 //! yearly loop has no error path, no strings, no files and no geometry.
 
 mod compile;
+mod crowded;
 mod model;
 mod movement;
 mod prepare;

@@ -6,6 +6,7 @@ use super::movement::Movement;
 use super::realise::Rates;
 use crate::demography::density::Curve;
 use crate::demography::local::LocalModel;
+use crate::network::CrowdingResponse;
 
 /// The threshold of quasi-extinction.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -66,6 +67,19 @@ impl Model {
     /// Individuals of each patch at census 0.
     pub fn start_totals(&self) -> Vec<u64> {
         self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
+    }
+
+    /// The same model with dispersal that answers to crowding.
+    pub(super) fn heeding(mut self, crowding: CrowdingResponse) -> Self {
+        if let Some(movement) = &mut self.movement {
+            movement.crowding = crowding;
+        }
+        self
+    }
+
+    /// What crowding does to dispersal.
+    pub(super) fn crowding_response(&self) -> CrowdingResponse {
+        self.movement.as_ref().map_or_else(CrowdingResponse::default, |movement| movement.crowding)
     }
 
     /// Links along which individuals may move.

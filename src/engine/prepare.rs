@@ -91,7 +91,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     }
     let model = compile(&settings, &landscape, &life_history, &environment, &network, start, counted_stages);
     let model = match model {
-        Ok(model) => model,
+        Ok(model) => model.heeding(dispersal.as_ref().map_or_else(Default::default, |table| table.crowding)),
         Err(reason) => {
             let place =
                 environment.correlation.as_ref().map_or(document.root().place().clone(), |said| said.place.clone());

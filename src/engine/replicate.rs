@@ -1,5 +1,6 @@
 //! One replicate: the state that a thread carries through the years, reused from replicate to replicate.
 
+use super::crowded::Crowd;
 use super::model::Model;
 use super::realise;
 use super::tally::{PatchTally, Record, Tallies};
@@ -58,6 +59,7 @@ pub(super) struct State {
     pub(super) counts: Vec<u32>,
     /// arrivals of the year, `[patch][stage]`, all 0 between years
     pub(super) arrivals: Vec<u32>,
+    pub(super) crowd: Crowd,
     pub(super) weather: Option<WeatherState>,
     /// one patch's realised rates; those that do not vary never change
     pub(super) rates: Vec<f64>,
@@ -79,6 +81,7 @@ impl State {
             replicate: ReplicateKey::new(model.seed, 0),
             counts: vec![0; cells],
             arrivals: vec![0; cells],
+            crowd: Crowd::new(model.crowding_response(), model.n_patches()),
             weather: model.rates.weather_state(),
             rates: model.rates.means().to_vec(),
             scratch: vec![0; model.n_stages],

@@ -56,6 +56,12 @@ fn pressure(model: &Model, patch: usize, counts: &[u32]) -> Pressure {
 fn dispersal(model: &Model, state: &mut State, key: YearKey) {
     let Some(movement) = &model.movement else { return };
     let stages = model.n_stages;
+    if !movement.crowding.is_idle() {
+        let patches = state.counts.chunks(stages).zip(&model.capacity).enumerate();
+        for (patch, (counts, capacity)) in patches {
+            movement.look(&mut state.crowd, patch, counts, &model.toward_capacity, *capacity);
+        }
+    }
     for patch in 0..model.n_patches() {
         let counts = &state.counts[patch * stages..(patch + 1) * stages];
         if counts.iter().all(|count| *count == 0) {

@@ -9,7 +9,7 @@ use crate::engine::Prepared;
 use crate::environment::Correlation;
 use crate::landscape::Crs;
 use crate::mistake::Mistake;
-use crate::network::Structure;
+use crate::network::{CrowdingResponse, Structure};
 use crate::study::Effort;
 
 /// The most names of patches or links that a line lists.
@@ -45,6 +45,8 @@ struct Landscape {
 #[derive(Debug, Serialize)]
 struct Network {
     links: usize,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    crowding: Vec<String>,
     components: usize,
     median_link_km: Option<f64>,
     mean_lost_share: f64,
@@ -177,6 +179,7 @@ impl Network {
         lengths.sort_unstable_by(f64::total_cmp);
         Some(Self {
             links: network.links.len(),
+            crowding: crowding_in_words(dispersal.as_ref()?.crowding),
             components: structure.graph.n_components,
             median_link_km: (!lengths.is_empty()).then(|| crate::num::quantile(&lengths, 0.5)),
             mean_lost_share: network.lost.iter().sum::<f64>() / network.lost.len() as f64,
@@ -193,7 +196,7 @@ impl Network {
 
     fn text(&self) -> String {
         let median = self.median_link_km.map(|km| format!(", half of them within {km:.2} km")).unwrap_or_default();
-        let rows = vec![
+        let mut rows = vec![
             row(
                 "links",
                 &format!("{}{median}; {}", grouped(self.links as u64), counted(self.components as u64, "component")),
@@ -212,6 +215,9 @@ impl Network {
                 ),
             ),
         ];
+        for (position, words) in self.crowding.iter().enumerate() {
+            rows.insert(1 + position, row("where it is crowded", words));
+        }
         block("Network", rows)
     }
 }
@@ -291,6 +297,15 @@ impl Species {
         lines(rows, &[Side::Left, Side::Right, Side::Right, Side::Right, Side::Right, Side::Right, Side::Right])
             .concat()
     }
+}
+
+fn crowding_in_words(response: CrowdingResponse) -> Vec<String> {
+    let power = |exponent: f64| {
+        let n_over_k = if (exponent - 1.0).abs() > 0.0 { format!("(N/K)^{exponent}") } else { "N/K".to_owned() };
+        format!("the chance to leave is times {n_over_k}, at most 1")
+    };
+    let passing = response.avoids_full.then(|| "emigrants pass full patches by".to_owned());
+    response.emigration_exponent.map(power).into_iter().chain(passing).collect()
 }
 
 fn column_sum(matrix: &Matrix, column: usize) -> f64 {

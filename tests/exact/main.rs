@@ -8,5 +8,6 @@
 mod branching;
 mod chains;
 mod moments;
+mod movement;
 mod support;
 mod weather;

@@ -35,6 +35,10 @@ pub(crate) struct Case {
     pub(crate) tables: String,
     /// `arrivals[i][j]`: probability that an emigrant of i arrives alive in j; empty where the tables say it
     pub(crate) arrivals: Vec<Vec<f64>>,
+    /// keys of `[dispersal]` beside the measured table
+    pub(crate) dispersal_keys: &'static str,
+    /// files beside the study, by name
+    pub(crate) files: Vec<(&'static str, String)>,
     pub(crate) quasi_extinction: Option<u32>,
     pub(crate) replicates: u32,
 }
@@ -58,6 +62,8 @@ impl Case {
             stages: stages.to_vec(),
             tables: tables.to_owned(),
             arrivals: Vec::new(),
+            dispersal_keys: "",
+            files: Vec::new(),
             quasi_extinction: None,
             replicates: REPLICATES,
         }
@@ -66,6 +72,18 @@ impl Case {
     /// Adds a measured dispersal table.
     pub(crate) fn arriving(mut self, arrivals: &[&[f64]]) -> Self {
         self.arrivals = arrivals.iter().map(|row| row.to_vec()).collect();
+        self
+    }
+
+    /// Adds keys of `[dispersal]` beside the measured table.
+    pub(crate) fn dispersing(mut self, keys: &'static str) -> Self {
+        self.dispersal_keys = keys;
+        self
+    }
+
+    /// Adds a file beside the study.
+    pub(crate) fn file(mut self, name: &'static str, text: String) -> Self {
+        self.files.push((name, text));
         self
     }
 
@@ -99,7 +117,11 @@ impl Case {
         study.push_str(&self.tables);
         if !self.arrivals.is_empty() {
             study.push_str("\n[dispersal]\nkernel = { table = \"arrivals.csv\" }\n");
+            study.push_str(self.dispersal_keys);
             write("arrivals.csv", &self.arrival_table());
+        }
+        for (name, text) in &self.files {
+            write(name, text);
         }
         write("study.toml", &study);
         match prepare(&folder.path().join("study.toml"), Overrides::default()) {
