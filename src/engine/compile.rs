@@ -107,6 +107,7 @@ pub(super) fn compile(
             on_fecundity: density.on_fecundity,
         }),
         ceiling: density.ceiling,
+        removals: Vec::new(),
         movement: Movement::compile(network, &life_history.stages),
         threshold: settings.quasi_extinction.as_ref().map(|threshold| Threshold {
             below: u64::from(threshold.below),

@@ -4,6 +4,7 @@ use std::sync::Arc;
 
 use super::movement::Movement;
 use super::realise::Rates;
+use super::removal::Removal;
 use crate::demography::density::Curve;
 use crate::demography::local::LocalModel;
 use crate::network::CrowdingResponse;
@@ -45,6 +46,7 @@ pub struct Model {
     pub(super) ceiling: bool,
     pub(super) rates: Rates,
     pub(super) movement: Option<Movement>,
+    pub(super) removals: Vec<Removal>,
     pub(super) threshold: Option<Threshold>,
 }
 
@@ -74,6 +76,12 @@ impl Model {
         if let Some(movement) = &mut self.movement {
             movement.crowding = crowding;
         }
+        self
+    }
+
+    /// The same model with removals, which act in this order.
+    pub(super) fn with_removals(mut self, removals: Vec<Removal>) -> Self {
+        self.removals = removals;
         self
     }
 

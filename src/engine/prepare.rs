@@ -4,6 +4,7 @@ use std::path::Path;
 
 use super::compile::{compile, start_counts};
 use super::model::Model;
+use super::removal::{Removal, RemovalTable};
 use crate::demography::LifeHistory;
 use crate::environment::EnvironmentTable;
 use crate::landscape::{Landscape, LandscapeTable, Neighbours};
@@ -33,6 +34,8 @@ pub struct Prepared {
     pub network: Network,
     /// the species
     pub life_history: LifeHistory,
+    /// who is taken out, and when
+    pub removals: Vec<RemovalTable>,
     /// how years vary
     pub environment: EnvironmentTable,
     /// the compiled model
@@ -66,6 +69,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         None => Some(EnvironmentTable::default()).filter(|_| !root.has("environment")),
     };
     let dispersal = root.table("dispersal").map(DispersalTable::read);
+    let removals = RemovalTable::read_all(&root);
     let landscape_table =
         required(&root, "landscape", "the patches: their file, capacity and start").and_then(LandscapeTable::read);
     let stage_names = life_history.as_ref().map(LifeHistory::stage_names).unwrap_or_default();
@@ -78,11 +82,13 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         Some(read) => Some(read?),
         None => None,
     };
+    let removals = removals?;
     settings.seed = overrides.seed.unwrap_or(settings.seed);
     settings.effort = overrides.replicates.map_or(settings.effort, Effort::Replicates);
     check_dispersal(document, &life_history, dispersal.as_ref());
     check_correlation(document, &life_history, &environment, &landscape);
     let counted_stages = counted_stages(document, &settings, &life_history);
+    let compiled_removals = compile_removals(document, &removals, &landscape, &life_history, settings.horizon);
     let start = start(document, &landscape, &life_history);
     let network = link(document, &landscape, dispersal.as_ref());
     let (counted_stages, start, network) = (counted_stages?, start?, network?);
@@ -91,7 +97,9 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     }
     let model = compile(&settings, &landscape, &life_history, &environment, &network, start, counted_stages);
     let model = match model {
-        Ok(model) => model.heeding(dispersal.as_ref().map_or_else(Default::default, |table| table.crowding)),
+        Ok(model) => model
+            .heeding(dispersal.as_ref().map_or_else(Default::default, |table| table.crowding))
+            .with_removals(compiled_removals),
         Err(reason) => {
             let place =
                 environment.correlation.as_ref().map_or(document.root().place().clone(), |said| said.place.clone());
@@ -106,6 +114,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         dispersal,
         network,
         life_history,
+        removals,
         environment,
         model,
         inputs: document.inputs(),
@@ -165,6 +174,18 @@ fn counted_stages(document: &Document, settings: &Settings, life_history: &LifeH
             None
         }
     }
+}
+
+fn compile_removals(
+    document: &Document,
+    removals: &[RemovalTable],
+    landscape: &Landscape,
+    life_history: &LifeHistory,
+    horizon: u32,
+) -> Vec<Removal> {
+    let stages = life_history.stage_names();
+    removals.iter().for_each(|removal| removal.warn_of_idle_years(document, horizon));
+    removals.iter().filter_map(|removal| removal.compile(document, landscape, &stages)).collect()
 }
 
 fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory) -> Option<Vec<u32>> {

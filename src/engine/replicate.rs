@@ -20,6 +20,7 @@ pub(super) struct Own {
     pub(super) immigrants: u64,
     pub(super) emigrants: u64,
     pub(super) arrived_elsewhere: u64,
+    pub(super) removed: u64,
 }
 
 impl Own {
@@ -46,6 +47,7 @@ impl Own {
         tally.immigrants += self.immigrants;
         tally.emigrants += self.emigrants;
         tally.arrived_elsewhere += self.arrived_elsewhere;
+        tally.removed += self.removed;
         tally.net_export += net_export;
         tally.net_export_squares += net_export.unsigned_abs().pow(2);
     }
@@ -102,6 +104,10 @@ impl State {
         }
         for (own, tally) in self.own.iter().zip(&mut self.tallies.patches) {
             own.add_to(tally);
+        }
+        if !model.removals.is_empty() {
+            let removed = self.own.iter().map(|own| own.removed).sum();
+            self.tallies.removed.get_or_insert_default().add(removed);
         }
         self.tallies.records.push(Record {
             replicate,

@@ -7,12 +7,13 @@ use crate::random::{Purpose, YearKey, remove_at_random};
 
 /// Takes the state from census `year` to census `year + 1`.
 ///
-/// Habitat changes (step 1) and management (step 5) have no part yet: the landscape is as is.
+/// Habitat changes (step 1) have no part yet: the landscape is as is.
 pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     let key = state.replicate.year(year);
     weather(model, state);
     local_dynamics(model, state, key);
     dispersal(model, state, key);
+    management(model, state, year, key);
     ceiling(model, state, key);
     census(model, state, year + 1);
 }
@@ -70,6 +71,13 @@ fn dispersal(model: &Model, state: &mut State, key: YearKey) {
         movement.leave(state, patch, key.patch(model.patch_keys[patch]));
     }
     movement.arrive(state);
+}
+
+/// Step 5: removals, in the order of the study.
+fn management(model: &Model, state: &mut State, year: u32, key: YearKey) {
+    for removal in &model.removals {
+        removal.act(state, &model.patch_keys, year, key);
+    }
 }
 
 /// Step 6: where the form is a ceiling, surplus over the whole part of capacity is removed at random. A patch without

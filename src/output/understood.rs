@@ -6,6 +6,7 @@ use super::terminal::{Side, lines};
 use super::words::{amount, counted, grouped};
 use crate::demography::{LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
+use crate::engine::removal::{Amount, RemovalTable, Years};
 use crate::environment::Correlation;
 use crate::landscape::Crs;
 use crate::mistake::Mistake;
@@ -27,6 +28,8 @@ pub struct Understood {
     network: Option<Network>,
     species: Species,
     weather: String,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    removals: Vec<String>,
     warnings: Vec<String>,
 }
 
@@ -101,6 +104,7 @@ impl Understood {
             network: Network::new(prepared),
             species: Species::new(&prepared.life_history),
             weather: weather(prepared),
+            removals: prepared.removals.iter().map(removal_in_words).collect(),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
         }
     }
@@ -123,7 +127,15 @@ impl Understood {
             format!("{}: {}, {effort}, seed {}\n", self.title, counted(self.horizon_years.into(), "year"), self.seed);
         let parts =
             [head, self.landscape.text(), self.network_text(), self.species.text(), format!("{}\n", self.weather)];
-        parts.join("\n")
+        parts.join("\n") + &self.removals_text()
+    }
+
+    fn removals_text(&self) -> String {
+        if self.removals.is_empty() {
+            return String::new();
+        }
+        let lines: Vec<String> = self.removals.iter().map(|removal| format!("  {removal}\n")).collect();
+        format!("\nRemovals, each year after dispersal\n{}", lines.concat())
     }
 
     fn network_text(&self) -> String {
@@ -297,6 +309,29 @@ impl Species {
         lines(rows, &[Side::Left, Side::Right, Side::Right, Side::Right, Side::Right, Side::Right, Side::Right])
             .concat()
     }
+}
+
+fn removal_in_words(removal: &RemovalTable) -> String {
+    let stage = removal.stage.as_ref().map(|stage| format!(" of stage {}", stage.value)).unwrap_or_default();
+    let (each, patches) = match removal.patches.as_ref().map(Vec::len) {
+        Some(1) => ("", "1 patch".to_owned()),
+        Some(n) => ("each of ", format!("{n} patches")),
+        None => ("each of ", "all patches".to_owned()),
+    };
+    let amount = match removal.amount {
+        Amount::Number(number) => format!("{}{stage} in {each}{patches}", counted(number.into(), "individual")),
+        Amount::Share(share) => format!("each individual{stage} with chance {share} in {patches}"),
+    };
+    let floor = if removal.floor > 0 { format!(", down to {} in a patch", removal.floor) } else { String::new() };
+    let years = match &removal.years {
+        Years::Between(0, u32::MAX) => "every year".to_owned(),
+        Years::Between(first, u32::MAX) => format!("from year {first} on"),
+        Years::Between(first, last) => format!("in years {first} to {last}"),
+        Years::Listed(years) => {
+            format!("in years {}", years.iter().map(u32::to_string).collect::<Vec<_>>().join(", "))
+        }
+    };
+    format!("{}: {amount}{floor}, {years}", removal.name.value)
 }
 
 fn crowding_in_words(response: CrowdingResponse) -> Vec<String> {

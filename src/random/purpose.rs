@@ -22,6 +22,8 @@ pub enum Purpose {
     Destinations(u32),
     /// who goes where there are too many
     Surplus,
+    /// who is taken by a removal, by the key of its name
+    Removal(u32),
 }
 
 impl Purpose {
@@ -35,6 +37,7 @@ impl Purpose {
             Self::Destinations(stage) => (6, stage),
             Self::Surplus => (7, 0),
             Self::Advance(stage) => (8, stage),
+            Self::Removal(removal) => (50, removal),
         };
         number << 32 | index as u64
     }

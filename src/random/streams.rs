@@ -219,6 +219,7 @@ mod tests {
             Purpose::Leaving(0),
             Purpose::Destinations(0),
             Purpose::Surplus,
+            Purpose::Removal(0),
         ];
         let first: BTreeSet<u64> = codes.into_iter().map(|purpose| year.network().draw(purpose).word()).collect();
         assert_eq!(first.len(), codes.len());

@@ -9,5 +9,6 @@ mod branching;
 mod chains;
 mod moments;
 mod movement;
+mod removal;
 mod support;
 mod weather;
