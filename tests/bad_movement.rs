@@ -125,3 +125,47 @@ fn removals() {
     let late = [WEATHER, DISPERSAL, TRAPPING, "number = 3\nyears = [19, 20]\n"];
     assert_warned(&late, "", &["trapping", "nothing is taken in year 20"]);
 }
+
+#[test]
+fn weather_in_detail() {
+    const SOUND: &str = "year,deviate\n2001,1\n2002,-1\n2003,1\n2004,-1\n";
+    for (table, years, words) in [
+        ("between_stages = -0.1", "", vec!["between_stages = -0.1", "from 0 to 1"]),
+        ("between_stages = \"apart\"", "", vec!["between_stages = \"apart\"", "from 0 to 1"]),
+    ] {
+        assert_refused(&[WEATHER, table, "\n", DISPERSAL], years, &words);
+    }
+    let with = |keys: &str| format!("[environment]\nrecorded = {keys}\n");
+    let resample = "{ table = \"years.csv\", use = \"resample\" }";
+    for (keys, years, words) in [
+        ("3", SOUND, vec!["recorded = 3", "a table"]),
+        ("{ use = \"resample\" }", SOUND, vec!["recorded.table is missing", "year and deviate"]),
+        ("{ table = \"years.csv\" }", SOUND, vec!["recorded.use is missing", "replay"]),
+        ("{ table = \"years.csv\", use = \"resampl\" }", SOUND, vec!["use = \"resampl\"", "write \"resample\""]),
+        ("{ table = \"year.csv\", use = \"resample\" }", SOUND, vec!["year.csv", "cannot be"]),
+        ("{ table = \"years.csv\", use = \"replay\" }", SOUND, vec!["at least 20 years", "it holds 4", "resample"]),
+        ("{ table = \"years.csv\", use = \"replay\", block_years = 2 }", SOUND, vec!["block_years = 2", "replayed"]),
+        ("{ table = \"years.csv\", use = \"resample\", block_years = 5 }", SOUND, vec!["block_years = 5", "at most 4"]),
+        ("{ table = \"years.csv\", use = \"resample\", block_years = 0 }", SOUND, vec!["block_years = 0", "whole"]),
+        ("{ table = \"years.csv\", use = \"resample\", block = 2 }", SOUND, vec!["block is not a key", "block_years"]),
+        (resample, "year,z\n2001,1\n2002,-1\n", vec!["years.csv:1", "a column deviate"]),
+        (resample, "year,deviate\n2001,1\n", vec!["years.csv:1", "at least two years"]),
+        (resample, "year,deviate\n2001,1\n2003,-1\n", vec!["years.csv:3", "year = 2003", "2002", "in order"]),
+        (resample, "year,deviate\n2002,1\n2001,-1\n", vec!["years.csv:3", "year = 2001", "2003", "in order"]),
+        (resample, "year,deviate\n2001,wet\n2002,-1\n", vec!["years.csv:2", "deviate = wet", "from -8 to 8"]),
+        (resample, "year,deviate\n2001,nan\n2002,-1\n", vec!["years.csv:2", "deviate = nan"]),
+        (resample, "year,deviate\n2001,1\n2002,-12\n", vec!["years.csv:3", "deviate = -12", "from -8 to 8"]),
+    ] {
+        assert_refused(&[&with(keys), DISPERSAL], years, &words);
+    }
+    for (key, words) in [
+        ("correlation = \"none\"\n", ["correlation = \"none\"", "in common"]),
+        ("correlation = { reach_km = 3 }\n", ["environment.correlation", "in common"]),
+        ("autocorrelation = 0.2\n", ["autocorrelation = 0.2", "their own memory"]),
+    ] {
+        assert_refused(&[&with(resample), key, DISPERSAL], SOUND, &words);
+    }
+    assert_eq!(read(&[&with(resample), DISPERSAL], "year,deviate\n2001,1\n2002,0\n2003,-1\n"), Default::default());
+    let wet = "year,deviate\n2001,1\n2002,2\n2003,0\n";
+    assert_warned(&[&with(resample), DISPERSAL], wet, &["mean 0 and sd 1", "not 1.00 and 1.00"]);
+}

@@ -95,7 +95,7 @@ pub(super) fn compile(
         seed: settings.seed,
         horizon: settings.horizon,
         n_stages,
-        rates: Rates::compile(&life_history.rates, environment, &centroids, &patch_keys)?,
+        rates: Rates::compile(&life_history.rates, environment, &centroids, &patch_keys, n_stages)?,
         patch_keys,
         start,
         capacity: landscape.patches.iter().map(|patch| patch.capacity).collect(),

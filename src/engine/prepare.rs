@@ -87,6 +87,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     settings.effort = overrides.replicates.map_or(settings.effort, Effort::Replicates);
     check_dispersal(document, &life_history, dispersal.as_ref());
     check_correlation(document, &life_history, &environment, &landscape);
+    check_weather(document, &life_history, &environment, settings.horizon);
     let counted_stages = counted_stages(document, &settings, &life_history);
     let compiled_removals = compile_removals(document, &removals, &landscape, &life_history, settings.horizon);
     let start = start(document, &landscape, &life_history);
@@ -150,7 +151,8 @@ fn check_correlation(
     environment: &EnvironmentTable,
     landscape: &Landscape,
 ) {
-    if life_history.varies() && landscape.patches.len() > 1 && environment.correlation.is_none() {
+    let says = environment.correlation.is_some() || environment.recorded.is_some();
+    if life_history.varies() && landscape.patches.len() > 1 && !says {
         let varying = life_history.rates.iter().find(|rate| rate.sd > 0.0).map_or("a rate", |rate| &rate.address);
         let expected = format!(
             "correlation under [environment], since {varying} varies from year to year: \
@@ -161,6 +163,21 @@ fn check_correlation(
             "independent years between patches make the network look safer, common years less safe; \
              say how far years are alike",
         ));
+    }
+}
+
+/// A record must reach the horizon, and stages can only go apart where there are several.
+fn check_weather(document: &Document, life_history: &LifeHistory, environment: &EnvironmentTable, horizon: u32) {
+    if let Some(mistake) = environment.recorded.as_ref().and_then(|record| record.too_short(horizon)) {
+        document.mistake(mistake);
+    }
+    if let Some(record) = environment.recorded.as_ref().filter(|_| !life_history.varies()) {
+        document.warning(record.table.mistake("a rate with an sd, or recorded years play no part"));
+    }
+    if environment.between_stages < 1.0 && life_history.stages.len() == 1 {
+        let found = format!("environment.between_stages = {}", environment.between_stages);
+        let note = "nothing to correlate, as there is one stage";
+        document.warning(Mistake::new(document.root().place().clone(), found, note));
     }
 }
 

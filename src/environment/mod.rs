@@ -2,10 +2,12 @@
 
 pub mod field;
 pub mod rates;
+mod record;
 mod table;
 mod weather;
 
 pub use field::{Field, MOST_CORRELATED_PLACES};
 pub use rates::{Located, RateCurves, YearlyRate};
+pub use record::{Record, Use};
 pub use table::{Correlation, EnvironmentTable};
 pub use weather::{Weather, WeatherState};

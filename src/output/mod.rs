@@ -8,6 +8,7 @@ mod first_study;
 mod folder;
 pub mod geojson;
 pub mod json;
+mod rules;
 mod terminal;
 #[cfg(test)]
 mod tests;

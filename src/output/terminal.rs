@@ -50,7 +50,7 @@ fn facts(outcome: &Outcome, account: &Account) -> String {
         facts.push(("emigrants lost", format!("{:.1} % died on the way or landed nowhere", 100.0 * share)));
     }
     if let Some(removed) = &summary.removed_per_year {
-        facts.push(("removed", format!("{} a year", mean(removed))));
+        facts.push(("removed", format!("{} individuals a year", mean(removed))));
     }
     if let Some(customary) = &summary.customary {
         facts.push(("customary target", customary_words(customary)));

@@ -2,15 +2,15 @@
 
 use serde::Serialize;
 
+use super::rules::{crowding_in_words, record_in_words, removal_in_words};
 use super::terminal::{Side, lines};
 use super::words::{amount, counted, grouped};
 use crate::demography::{LifeHistory, Matrix, Rate};
 use crate::engine::Prepared;
-use crate::engine::removal::{Amount, RemovalTable, Years};
 use crate::environment::Correlation;
 use crate::landscape::Crs;
 use crate::mistake::Mistake;
-use crate::network::{CrowdingResponse, Structure};
+use crate::network::Structure;
 use crate::study::Effort;
 
 /// The most names of patches or links that a line lists.
@@ -311,38 +311,6 @@ impl Species {
     }
 }
 
-fn removal_in_words(removal: &RemovalTable) -> String {
-    let stage = removal.stage.as_ref().map(|stage| format!(" of stage {}", stage.value)).unwrap_or_default();
-    let (each, patches) = match removal.patches.as_ref().map(Vec::len) {
-        Some(1) => ("", "1 patch".to_owned()),
-        Some(n) => ("each of ", format!("{n} patches")),
-        None => ("each of ", "all patches".to_owned()),
-    };
-    let amount = match removal.amount {
-        Amount::Number(number) => format!("{}{stage} in {each}{patches}", counted(number.into(), "individual")),
-        Amount::Share(share) => format!("each individual{stage} with chance {share} in {patches}"),
-    };
-    let floor = if removal.floor > 0 { format!(", down to {} in a patch", removal.floor) } else { String::new() };
-    let years = match &removal.years {
-        Years::Between(0, u32::MAX) => "every year".to_owned(),
-        Years::Between(first, u32::MAX) => format!("from year {first} on"),
-        Years::Between(first, last) => format!("in years {first} to {last}"),
-        Years::Listed(years) => {
-            format!("in years {}", years.iter().map(u32::to_string).collect::<Vec<_>>().join(", "))
-        }
-    };
-    format!("{}: {amount}{floor}, {years}", removal.name.value)
-}
-
-fn crowding_in_words(response: CrowdingResponse) -> Vec<String> {
-    let power = |exponent: f64| {
-        let n_over_k = if (exponent - 1.0).abs() > 0.0 { format!("(N/K)^{exponent}") } else { "N/K".to_owned() };
-        format!("the chance to leave is times {n_over_k}, at most 1")
-    };
-    let passing = response.avoids_full.then(|| "emigrants pass full patches by".to_owned());
-    response.emigration_exponent.map(power).into_iter().chain(passing).collect()
-}
-
 fn column_sum(matrix: &Matrix, column: usize) -> f64 {
     (0..matrix.size()).map(|row| matrix[(row, column)]).sum()
 }
@@ -382,19 +350,24 @@ fn density_in_words(life_history: &LifeHistory) -> String {
 fn weather(prepared: &Prepared) -> String {
     if prepared.life_history.varies() {
         let environment = &prepared.environment;
+        let recorded = environment.recorded.as_ref().map(record_in_words);
         let between_patches = match environment.correlation.as_ref().map(|said| said.value) {
             Some(Correlation::Reach { reach_km, nugget }) if nugget > 0.0 => {
                 format!("{} exp(-d / {reach_km} km)", short(1.0 - nugget))
             }
             Some(Correlation::Reach { reach_km, .. }) => format!("exp(-d / {reach_km} km)"),
+            _ if recorded.is_some() => "1: all patches have the recorded years".to_owned(),
             Some(Correlation::Full) => "1: all patches have the same years".to_owned(),
             Some(Correlation::None) | None => "0: every patch has years of its own".to_owned(),
         };
-        let rows = vec![
+        let mut rows = vec![
             row("correlation of patches", &between_patches),
             row("of survival with fecundity", &short(environment.between_rates)),
-            row("of a year with the next", &short(environment.autocorrelation)),
+            row("of a year with the next", &recorded.unwrap_or_else(|| short(environment.autocorrelation))),
         ];
+        if environment.between_stages < 1.0 {
+            rows.insert(2, row("of stages with each other", &short(environment.between_stages)));
+        }
         block("Weather", rows).trim_end().to_owned()
     } else {
         "Weather: no rate varies between years".to_owned()

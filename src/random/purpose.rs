@@ -6,9 +6,9 @@
 /// given out again.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Purpose {
-    /// the weather of a rate group, shared with neighbours
+    /// the weather of a rate group, shared with neighbours; beyond the groups, that of each group of each stage
     Weather(u32),
-    /// the weather of a rate group that is a patch's own
+    /// the same that is a patch's own
     OwnWeather(u32),
     /// who of a stage survives, and advances
     Fates(u32),
@@ -24,6 +24,8 @@ pub enum Purpose {
     Surplus,
     /// who is taken by a removal, by the key of its name
     Removal(u32),
+    /// at which year of a record a block of years begins
+    RecordedYears,
 }
 
 impl Purpose {
@@ -38,6 +40,7 @@ impl Purpose {
             Self::Surplus => (7, 0),
             Self::Advance(stage) => (8, stage),
             Self::Removal(removal) => (50, removal),
+            Self::RecordedYears => (51, 0),
         };
         number << 32 | index as u64
     }

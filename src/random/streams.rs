@@ -220,6 +220,7 @@ mod tests {
             Purpose::Destinations(0),
             Purpose::Surplus,
             Purpose::Removal(0),
+            Purpose::RecordedYears,
         ];
         let first: BTreeSet<u64> = codes.into_iter().map(|purpose| year.network().draw(purpose).word()).collect();
         assert_eq!(first.len(), codes.len());

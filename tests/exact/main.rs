@@ -12,3 +12,4 @@ mod movement;
 mod removal;
 mod support;
 mod weather;
+mod years;

@@ -216,6 +216,21 @@ impl Seen {
         self.mean(&format!("variance at {census}"), sample_mean(&squares), sd * sd, sample_sd(&squares));
     }
 
+    /// Extinction and total at `census` against the chance of every total.
+    pub(crate) fn distribution(&self, census: usize, chances: impl Iterator<Item = (usize, f64)>) {
+        let (mut empty, mut mass, mut mean, mut square) = (0.0, 0.0, 0.0, 0.0);
+        for (total, chance) in chances {
+            let total = total as f64;
+            empty += if total > 0.0 { 0.0 } else { chance };
+            mass += chance;
+            mean += chance * total;
+            square += chance * total * total;
+        }
+        assert!((mass - 1.0_f64).abs() < 1e-9, "{}: the chain loses mass: {mass}", self.name);
+        self.extinct(census, empty);
+        self.total(census, mean, (square - mean * mean).sqrt());
+    }
+
     /// P(patch occupied) at the last census.
     pub(crate) fn occupied_at_end(&self, nulls: &[f64]) {
         for (position, (patch, null)) in self.tallies.patches.iter().zip(nulls).enumerate() {
