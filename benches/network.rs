@@ -4,7 +4,9 @@ use divan::{Bencher, black_box};
 use eyot::landscape::{CapacityOverTime, Crs, Landscape, Patch, Start};
 use eyot::mistake::Place;
 use eyot::network::kernel::{Exponential, Scale};
-use eyot::network::{DispersalTable, Distances, Kernel, KernelDispersal, Movement, Network, Settlement, Structure};
+use eyot::network::{
+    CrowdingResponse, DispersalTable, Distances, Kernel, KernelDispersal, Movement, Network, Settlement, Structure,
+};
 use geo::{Geometry, MultiPolygon};
 use kiddo::{ImmutableKdTree, SquaredEuclidean};
 use rayon::prelude::*;
@@ -80,7 +82,12 @@ impl Distances for Centroids<'_> {
 fn dispersal(settlement: Settlement) -> DispersalTable {
     let kernel = Kernel::new(Exponential::new(Scale::MeanKm(1.4)));
     let movement = KernelDispersal { kernel, settlement, path_mortality_per_km: 0.15, max_km: None, tail: 1e-4 };
-    DispersalTable { movement: Movement::Kernel(movement), area_exponent: 1.0, place: Place::Call }
+    DispersalTable {
+        movement: Movement::Kernel(movement),
+        area_exponent: 1.0,
+        crowding: CrowdingResponse::default(),
+        place: Place::Call,
+    }
 }
 
 #[divan::bench(args = [1_000, 10_000], sample_count = 5)]

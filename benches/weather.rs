@@ -16,7 +16,7 @@ const PATCHES: [usize; 3] = [50, 256, 1000];
 
 fn weather(correlation: Correlation, n_patches: usize, between_rates: f64) -> Weather {
     let correlation = Some(Said { value: correlation, place: Place::Call, words: String::new() });
-    let table = EnvironmentTable { correlation, between_rates, autocorrelation: 0.2 };
+    let table = EnvironmentTable { correlation, between_rates, autocorrelation: 0.2, ..EnvironmentTable::default() };
     // A low-discrepancy sequence in a square of 10 km.
     let at = |i: usize, step: f64| 10.0 * (0.5 + (i + 1) as f64 * step).fract();
     let centroids: Vec<[f64; 2]> =

@@ -45,9 +45,16 @@ fn study(horizon: u32, life_history: &str) -> Prepared {
         [environment]
         correlation = {{ reach_km = 3, nugget = 0.1 }}
         autocorrelation = 0.2
+        between_stages = 0.5
         [dispersal]
         kernel = {{ shape = "exponential", mean_km = 1.0 }}
         settlement = "shared"
+        rises_with_crowding = {{ exponent = 1 }}
+        avoids_full = true
+        [[removal]]
+        name = "trapping"
+        share = 0.1
+        floor = 2
         [[catastrophe]]
         name = "storm"
         yearly_probability = 0.1

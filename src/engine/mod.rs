@@ -5,12 +5,14 @@
 
 mod capacity;
 mod compile;
+mod crowded;
 mod full_or_empty;
 mod model;
 mod movement;
 mod occupancy;
 mod prepare;
 mod realise;
+pub mod removal;
 mod replicate;
 mod run;
 mod tally;
@@ -19,5 +21,6 @@ mod year;
 pub use compile::start_counts;
 pub use model::{Model, Threshold};
 pub use prepare::{Overrides, Prepared, prepare};
+pub use removal::RemovalTable;
 pub use run::{Progress, Run, Stopping, run};
-pub use tally::{PatchTally, Record, Tallies};
+pub use tally::{PatchTally, Record, RemovedTally, Tallies};

@@ -6,9 +6,11 @@ use super::capacity::ChangingCapacity;
 use super::movement::Movement;
 use super::occupancy::Turnovers;
 use super::realise::Rates;
+use super::removal::Removal;
 use crate::demography::density::Curve;
 use crate::demography::local::LocalModel;
 use crate::environment::Catastrophes;
+use crate::network::CrowdingResponse;
 
 /// The threshold of quasi-extinction.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -54,6 +56,7 @@ pub struct Model {
     pub(super) turnovers: Option<Turnovers>,
     /// links of the network, whether anybody moves along them or not
     pub(super) n_links: usize,
+    pub(super) removals: Vec<Removal>,
     pub(super) threshold: Option<Threshold>,
 }
 
@@ -76,6 +79,25 @@ impl Model {
     /// Individuals of each patch at census 0.
     pub fn start_totals(&self) -> Vec<u64> {
         self.start.chunks(self.n_stages).map(|stages| stages.iter().map(|count| u64::from(*count)).sum()).collect()
+    }
+
+    /// The same model with dispersal that answers to crowding.
+    pub(super) fn heeding(mut self, crowding: CrowdingResponse) -> Self {
+        if let Some(movement) = &mut self.movement {
+            movement.crowding = crowding;
+        }
+        self
+    }
+
+    /// The same model with removals, which act in this order.
+    pub(super) fn with_removals(mut self, removals: Vec<Removal>) -> Self {
+        self.removals = removals;
+        self
+    }
+
+    /// What crowding does to dispersal.
+    pub(super) fn crowding_response(&self) -> CrowdingResponse {
+        self.movement.as_ref().map_or_else(CrowdingResponse::default, |movement| movement.crowding)
     }
 
     /// Where patches are full or empty: the number that would be occupied at rest in average years, if chance made no patch

@@ -50,7 +50,10 @@ impl Turnovers {
             model.rates.realise(state.weather.as_ref(), patch, &mut state.rates);
             let [e, y] = [state.rates[0], state.rates[1]];
             let turnover = self.occupancy.turnover(e, y, self.area_to_x[patch], connectivity);
-            let chances = [turnover.extinction, turnover.colonisation];
+            // Rescue has acted; what a catastrophe leaves of survival then bears on those who would have stayed.
+            let survival = state.catastrophes.as_ref().map_or(1.0, |catastrophes| catastrophes.left(patch).survival);
+            let extinction = 1.0 - (1.0 - turnover.extinction) * survival;
+            let chances = [extinction, turnover.colonisation];
             let place = key.patch(model.patch_keys[patch]);
             let counts = &mut state.counts[patch..=patch];
             model.local.step(counts, &chances, Pressure::NONE, place, &mut state.scratch);

@@ -5,6 +5,7 @@ use std::path::Path;
 use super::compile::{Years, compile, start_counts};
 use super::full_or_empty::{self, Linked};
 use super::model::Model;
+use super::removal::{Removal, RemovalTable};
 use crate::demography::LifeHistory;
 use crate::environment::{Catastrophe, Correlation, EnvironmentTable};
 use crate::landscape::{Landscape, LandscapeTable, Neighbours};
@@ -36,6 +37,8 @@ pub struct Prepared {
     pub n_left_out: u64,
     /// the species
     pub life_history: LifeHistory,
+    /// who is taken out, and when
+    pub removals: Vec<RemovalTable>,
     /// how years vary
     pub environment: EnvironmentTable,
     /// what strikes now and then
@@ -78,6 +81,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     } else {
         DispersalTable::read
     });
+    let removals = RemovalTable::read_all(&root);
     let landscape_table = required(&root, "landscape", "the patches: their file, capacity and start")
         .and_then(if full_or_empty { LandscapeTable::read_full_or_empty } else { LandscapeTable::read });
     let stage_names = life_history.as_ref().map(LifeHistory::stage_names).unwrap_or_default();
@@ -96,8 +100,16 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         }
         check_correlation(document, life_history, environment, landscape.as_ref());
     }
+    if life_history.as_ref().is_some_and(|life_history| life_history.occupancy.is_some()) {
+        for removal in removals.iter().flatten() {
+            document.mistake(removal.name.mistake("no removals in an occupancy study, which counts nobody"));
+        }
+    }
     let settings = settings.and_then(|settings| override_settings(document, settings, overrides));
     let counted_stages = both(&settings, &life_history).and_then(|(a, b)| counted_stages(document, a, b));
+    if let (Some(settings), Some(life_history), Some(environment)) = (&settings, &life_history, &environment) {
+        check_weather(document, life_history, environment, settings.horizon);
+    }
     let start = both(&landscape, &life_history).and_then(|(a, b)| start(document, a, b));
     let occupancy = life_history.as_ref().and_then(|life_history| life_history.occupancy);
     let linked = landscape.as_ref().and_then(|landscape| match (&dispersal, occupancy) {
@@ -108,7 +120,8 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     });
     let (settings, life_history, environment, landscape) = (settings?, life_history?, environment?, landscape?);
     let (counted_stages, start, linked) = (counted_stages?, start?, linked?);
-    let catastrophes = catastrophes?;
+    let (catastrophes, removals) = (catastrophes?, removals?);
+    let compiled_removals = compile_removals(document, &removals, &landscape, &life_history, settings.horizon);
     let Linked { network, turnovers, n_left_out } = linked;
     let dispersal = dispersal.flatten();
     if !document.is_clean() {
@@ -117,7 +130,9 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
     let years = Years { environment: &environment, catastrophes: &catastrophes };
     let model = compile(&settings, &landscape, &life_history, &years, &network, start, counted_stages);
     let model = match model {
-        Ok(model) => Model { turnovers, ..model },
+        Ok(model) => Model { turnovers, ..model }
+            .heeding(dispersal.as_ref().map_or_else(Default::default, |table| table.crowding))
+            .with_removals(compiled_removals),
         Err(reason) => {
             let place =
                 environment.correlation.as_ref().map_or(document.root().place().clone(), |said| said.place.clone());
@@ -139,6 +154,7 @@ fn read(document: &Document, overrides: Overrides) -> Option<Prepared> {
         network,
         n_left_out,
         life_history,
+        removals,
         environment,
         catastrophes,
         model,
@@ -202,7 +218,8 @@ fn check_correlation(
 ) {
     // A landscape that could not be read is taken for one of several patches.
     let several = landscape.is_none_or(|landscape| landscape.patches.len() > 1);
-    if life_history.varies() && several && environment.correlation.is_none() {
+    let says = environment.correlation.is_some() || environment.recorded.is_some();
+    if life_history.varies() && several && !says {
         let varying = life_history.rates.iter().find(|rate| rate.sd > 0.0).map_or("a rate", |rate| &rate.address);
         let expected = format!(
             "correlation under [environment], since {varying} varies from year to year: \
@@ -213,6 +230,21 @@ fn check_correlation(
             "independent years between patches make the network look safer, common years less safe; \
              say how far years are alike",
         ));
+    }
+}
+
+/// A record must reach the horizon, and stages can only go apart where there are several.
+fn check_weather(document: &Document, life_history: &LifeHistory, environment: &EnvironmentTable, horizon: u32) {
+    if let Some(mistake) = environment.recorded.as_ref().and_then(|record| record.too_short(horizon)) {
+        document.mistake(mistake);
+    }
+    if let Some(record) = environment.recorded.as_ref().filter(|_| !life_history.varies()) {
+        document.warning(record.table.mistake("a rate with an sd, or recorded years play no part"));
+    }
+    if environment.between_stages < 1.0 && life_history.stages.len() == 1 {
+        let found = format!("environment.between_stages = {}", environment.between_stages);
+        let note = "nothing to correlate, as there is one stage";
+        document.warning(Mistake::new(document.root().place().clone(), found, note));
     }
 }
 
@@ -229,6 +261,18 @@ fn counted_stages(document: &Document, settings: &Settings, life_history: &LifeH
             None
         }
     }
+}
+
+fn compile_removals(
+    document: &Document,
+    removals: &[RemovalTable],
+    landscape: &Landscape,
+    life_history: &LifeHistory,
+    horizon: u32,
+) -> Vec<Removal> {
+    let stages = life_history.stage_names();
+    removals.iter().for_each(|removal| removal.warn_of_idle_years(document, horizon));
+    removals.iter().filter_map(|removal| removal.compile(document, landscape, &stages)).collect()
 }
 
 fn start(document: &Document, landscape: &Landscape, life_history: &LifeHistory) -> Option<Vec<u32>> {

@@ -16,8 +16,16 @@ pub(super) struct Rates {
 struct Varying {
     weather: Weather,
     curves: RateCurves,
-    /// the rates that vary, by position, those of the first group first
-    moving: [Vec<usize>; 2],
+    moving: Vec<Moving>,
+}
+
+/// Rates that follow the same deviates.
+#[derive(Debug)]
+struct Moving {
+    group: usize,
+    stage: usize,
+    /// their positions
+    rates: Vec<usize>,
 }
 
 impl Rates {
@@ -30,16 +38,17 @@ impl Rates {
         environment: &EnvironmentTable,
         centroids_km: &[[f64; 2]],
         patch_keys: &[u64],
+        n_stages: usize,
     ) -> Result<Self, String> {
         let means = rates.iter().map(|rate| rate.mean).collect();
-        let moving = [0, 1].map(|group| moving(rates, group));
-        if moving.iter().all(Vec::is_empty) {
+        if rates.iter().all(|rate| rate.sd <= 0.0) {
             return Ok(Self { means, varying: None });
         }
         // The first group is drawn in any case: the second follows it as far as they are correlated.
-        let n_groups = if moving[1].is_empty() { 1 } else { 2 };
+        let n_groups = if rates.iter().any(|rate| rate.sd > 0.0 && group(rate) == 1) { 2 } else { 1 };
         let yearly: Vec<YearlyRate> = rates.iter().map(yearly).collect();
-        let weather = Weather::compile(environment, centroids_km, patch_keys, n_groups)?;
+        let weather = Weather::compile(environment, centroids_km, patch_keys, n_groups)?.with_stages(n_stages);
+        let moving = moving(rates, weather.n_kinds_of_stages());
         Ok(Self { means, varying: Some(Varying { weather, curves: RateCurves::new(&yearly), moving }) })
     }
 
@@ -64,12 +73,9 @@ impl Rates {
     #[inline]
     pub(super) fn realise(&self, state: Option<&WeatherState>, patch: usize, rates: &mut [f64]) {
         let (Some(varying), Some(state)) = (&self.varying, state) else { return };
-        for (group, moving) in varying.moving.iter().enumerate() {
-            if moving.is_empty() {
-                continue;
-            }
-            let located = varying.curves.locate(state.deviates(group)[patch]);
-            for rate in moving {
+        for moving in &varying.moving {
+            let located = varying.curves.locate(state.stage_deviates(moving.group, moving.stage)[patch]);
+            for rate in &moving.rates {
                 rates[*rate] = varying.curves.rate(*rate, &located);
             }
         }
@@ -83,12 +89,25 @@ pub(super) fn begin(state: &mut Option<WeatherState>, replicate: ReplicateKey) {
     }
 }
 
-fn moving(rates: &[Rate], group: usize) -> Vec<usize> {
-    let in_group = |rate: &Rate| match rate.group {
-        RateGroup::Survival | RateGroup::Growth => group == 0,
-        RateGroup::Fecundity => group == 1,
+/// The rates that vary, by the deviates that they follow: of a group, and of one of so many stages.
+fn moving(rates: &[Rate], n_stages: usize) -> Vec<Moving> {
+    let of = |the_group: usize, stage: usize| Moving {
+        group: the_group,
+        stage,
+        // Rates stand group by group, each in the order of the stages.
+        rates: (0..rates.len())
+            .filter(|at| rates[*at].sd > 0.0 && group(&rates[*at]) == the_group && at % n_stages == stage)
+            .collect(),
     };
-    (0..rates.len()).filter(|position| rates[*position].sd > 0.0 && in_group(&rates[*position])).collect()
+    let all = [0, 1].into_iter().flat_map(|group| (0..n_stages).map(move |stage| of(group, stage)));
+    all.filter(|moving| !moving.rates.is_empty()).collect()
+}
+
+fn group(rate: &Rate) -> usize {
+    match rate.group {
+        RateGroup::Survival | RateGroup::Growth => 0,
+        RateGroup::Fecundity => 1,
+    }
 }
 
 fn yearly(rate: &Rate) -> YearlyRate {

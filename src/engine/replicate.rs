@@ -1,5 +1,6 @@
 //! One replicate: the state that a thread carries through the years, reused from replicate to replicate.
 
+use super::crowded::Crowd;
 use super::model::Model;
 use super::realise;
 use super::tally::{PatchTally, Record, Tallies};
@@ -19,6 +20,7 @@ pub(super) struct Own {
     pub(super) immigrants: u64,
     pub(super) emigrants: u64,
     pub(super) arrived_elsewhere: u64,
+    pub(super) removed: u64,
 }
 
 impl Own {
@@ -45,6 +47,7 @@ impl Own {
         tally.immigrants += self.immigrants;
         tally.emigrants += self.emigrants;
         tally.arrived_elsewhere += self.arrived_elsewhere;
+        tally.removed += self.removed;
         tally.net_export += net_export;
         tally.net_export_squares += net_export.unsigned_abs().pow(2);
     }
@@ -58,6 +61,7 @@ pub(super) struct State {
     pub(super) counts: Vec<u32>,
     /// arrivals of the year, `[patch][stage]`, all 0 between years
     pub(super) arrivals: Vec<u32>,
+    pub(super) crowd: Crowd,
     pub(super) weather: Option<WeatherState>,
     pub(super) catastrophes: Option<CatastropheState>,
     /// the year's capacity by patch
@@ -84,6 +88,7 @@ impl State {
             replicate: ReplicateKey::new(model.seed, 0),
             counts: vec![0; cells],
             arrivals: vec![0; cells],
+            crowd: Crowd::new(model.crowding_response(), model.n_patches()),
             weather: model.rates.weather_state(),
             catastrophes: model.catastrophes.as_ref().map(Catastrophes::state),
             capacity: model.capacity.clone(),
@@ -107,6 +112,10 @@ impl State {
         }
         for (own, tally) in self.own.iter().zip(&mut self.tallies.patches) {
             own.add_to(tally);
+        }
+        if !model.removals.is_empty() {
+            let removed = self.own.iter().map(|own| own.removed).sum();
+            self.tallies.removed.get_or_insert_default().add(removed);
         }
         self.tallies.add_record(Record {
             replicate,

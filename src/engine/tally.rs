@@ -40,10 +40,29 @@ pub struct PatchTally {
     pub emigrants: u64,
     /// those of its emigrants who arrived elsewhere alive
     pub arrived_elsewhere: u64,
+    /// those taken out by removals
+    pub removed: u64,
     /// each replicate's (arrived elsewhere - immigrants), summed
     pub net_export: i128,
     /// the squares of the same, summed
     pub net_export_squares: u128,
+}
+
+/// Individuals taken out of the whole network in a replicate, summed over replicates.
+#[derive(Debug, Clone, Copy, Default, PartialEq, Eq)]
+pub struct RemovedTally {
+    /// the sum
+    pub sum: u128,
+    /// the sum of squares
+    pub squares: u128,
+}
+
+impl RemovedTally {
+    /// Adds a replicate.
+    pub(super) fn add(&mut self, removed: u64) {
+        self.sum += u128::from(removed);
+        self.squares += u128::from(removed) * u128::from(removed);
+    }
 }
 
 /// The sum over a set of replicates.
@@ -61,6 +80,8 @@ pub struct Tallies {
     pub patches: Vec<PatchTally>,
     /// movers summed over years and replicates, one a link of the network
     pub movers: Vec<u64>,
+    /// those taken out by removals; `None` where the study has none
+    pub removed: Option<RemovedTally>,
 }
 
 impl Tallies {
@@ -73,6 +94,7 @@ impl Tallies {
             occupied_patches: vec![0; horizon as usize + 1],
             patches: vec![PatchTally::default(); n_patches],
             movers: vec![0; n_links],
+            removed: None,
         }
     }
 
@@ -106,6 +128,11 @@ impl Tallies {
         }
         add_all(&mut self.occupied_patches, &other.occupied_patches);
         add_all(&mut self.movers, &other.movers);
+        if let Some(more) = other.removed {
+            let removed = self.removed.get_or_insert_default();
+            removed.sum += more.sum;
+            removed.squares += more.squares;
+        }
         for (tally, more) in self.patches.iter_mut().zip(&other.patches) {
             tally.add(more);
         }
@@ -131,6 +158,7 @@ impl PatchTally {
         self.immigrants += more.immigrants;
         self.emigrants += more.emigrants;
         self.arrived_elsewhere += more.arrived_elsewhere;
+        self.removed += more.removed;
         self.net_export += more.net_export;
         self.net_export_squares += more.net_export_squares;
     }

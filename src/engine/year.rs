@@ -8,7 +8,7 @@ use crate::random::{Purpose, YearKey, remove_at_random};
 
 /// Takes the state from census `year` to census `year + 1`.
 ///
-/// Habitat changes (step 1) and management (step 5) have no part yet: the landscape is as is.
+/// Habitat changes (step 1) have no part yet: the landscape is as is.
 pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     let key = state.replicate.year(year);
     weather(model, state, key, year);
@@ -17,6 +17,7 @@ pub(super) fn step(model: &Model, state: &mut State, year: u32) {
     } else {
         local_dynamics(model, state, key);
         dispersal(model, state, key);
+        management(model, state, year, key);
         ceiling(model, state, key);
     }
     census(model, state, year + 1);
@@ -72,6 +73,12 @@ fn pressure(model: &Model, capacity: f64, counts: &[u32]) -> Pressure {
 fn dispersal(model: &Model, state: &mut State, key: YearKey) {
     let Some(movement) = &model.movement else { return };
     let stages = model.n_stages;
+    if !movement.crowding.is_idle() {
+        let patches = state.counts.chunks(stages).zip(&state.capacity).enumerate();
+        for (patch, (counts, capacity)) in patches {
+            movement.look(&mut state.crowd, patch, counts, &model.toward_capacity, *capacity);
+        }
+    }
     for patch in 0..model.n_patches() {
         let counts = &state.counts[patch * stages..(patch + 1) * stages];
         if counts.iter().all(|count| *count == 0) {
@@ -80,6 +87,13 @@ fn dispersal(model: &Model, state: &mut State, key: YearKey) {
         movement.leave(state, patch, key.patch(model.patch_keys[patch]));
     }
     movement.arrive(state);
+}
+
+/// Step 5: removals, in the order of the study.
+fn management(model: &Model, state: &mut State, year: u32, key: YearKey) {
+    for removal in &model.removals {
+        removal.act(state, &model.patch_keys, year, key);
+    }
 }
 
 /// Step 6: where the form is a ceiling, surplus over the whole part of capacity is removed at random. A patch without

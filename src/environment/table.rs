@@ -1,5 +1,6 @@
 //! The study's table `environment`.
 
+use super::Record;
 use crate::study::{Item, Numbers, POSITIVE, PROBABILITY, Said, Table};
 
 /// How the weather of one patch goes with that of another.
@@ -25,14 +26,18 @@ pub struct EnvironmentTable {
     pub correlation: Option<Said<Correlation>>,
     /// correlation between the deviates of the rate groups, from -1 to 1
     pub between_rates: f64,
+    /// correlation between the deviates of any two stages in a rate group, from 0 to 1
+    pub between_stages: f64,
     /// correlation between a year's deviate and the next year's, between -1 and 1
     pub autocorrelation: f64,
+    /// recorded years in place of drawn ones
+    pub recorded: Option<Record>,
 }
 
 impl Default for EnvironmentTable {
     /// What a study without the table says.
     fn default() -> Self {
-        Self { correlation: None, between_rates: 1.0, autocorrelation: 0.0 }
+        Self { correlation: None, between_rates: 1.0, between_stages: 1.0, autocorrelation: 0.0, recorded: None }
     }
 }
 
@@ -45,11 +50,44 @@ impl EnvironmentTable {
         };
         let closed = Numbers { low: -1.0, high: 1.0, above_low: false, below_high: false };
         let between_rates = number_or(&table, "between_rates", closed, 1.0);
+        let between_stages = number_or(&table, "between_stages", PROBABILITY, 1.0);
         let open = Numbers { low: -1.0, high: 1.0, above_low: true, below_high: true };
         let autocorrelation = number_or(&table, "autocorrelation", open, 0.0);
+        let recorded = read_recorded(&table);
         table.finish();
-        Some(Self { correlation: correlation?, between_rates: between_rates?, autocorrelation: autocorrelation? })
+        Some(Self {
+            correlation: correlation?,
+            between_rates: between_rates?,
+            between_stages: between_stages?,
+            autocorrelation: autocorrelation?,
+            recorded: recorded?,
+        })
     }
+}
+
+/// A record is the same in all patches and has its own memory: `None`, too, where the study says otherwise beside it.
+fn read_recorded(table: &Table<'_>) -> Option<Option<Record>> {
+    if !table.has("recorded") {
+        return Some(None);
+    }
+    let record = table.table("recorded").and_then(Record::read);
+    let mut fits = true;
+    match table.item("correlation") {
+        None => {}
+        Some(Item::Text(said)) if said.value == "full" => {}
+        Some(other) => {
+            other.refuse(
+                table.document(),
+                "\"full\" or nothing beside recorded years, which all patches have in common",
+            );
+            fits = false;
+        }
+    }
+    if let Some(other) = table.item("autocorrelation") {
+        other.refuse(table.document(), "nothing beside recorded years, which have their own memory");
+        fits = false;
+    }
+    record.filter(|_| fits).map(Some)
 }
 
 fn read_correlation(table: &Table<'_>, item: Item<'_>) -> Option<Said<Correlation>> {

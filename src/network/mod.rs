@@ -3,6 +3,7 @@
 mod build;
 mod capacity;
 mod connectivity;
+mod crowding;
 mod graph;
 pub mod kernel;
 mod links;
@@ -20,6 +21,7 @@ mod table;
 
 pub use capacity::Capacity;
 pub use connectivity::Connectivity;
+pub use crowding::CrowdingResponse;
 pub use graph::Graph;
 pub use kernel::Kernel;
 pub use links::{Link, Network};

@@ -1,5 +1,6 @@
 //! The table `[dispersal]` of a study.
 
+use super::crowding::CrowdingResponse;
 use super::kernel::Kernel;
 use super::measured::Measured;
 use crate::mistake::{Mistake, Place};
@@ -48,6 +49,8 @@ pub struct DispersalTable {
     pub movement: Movement,
     /// exponent b of the area in a target's weight A^b
     pub area_exponent: f64,
+    /// what crowding does to leaving and settling
+    pub crowding: CrowdingResponse,
     /// where the table stands in the study
     pub place: Place,
 }
@@ -68,6 +71,7 @@ impl DispersalTable {
     fn read_as(table: Table<'_>, used: Use) -> Option<Self> {
         let place = table.place().clone();
         let area_exponent = or(&table, "area_exponent", NOT_NEGATIVE, 1.0);
+        let crowding = CrowdingResponse::read(&table);
         if !table.has("kernel") {
             table.missing(
                 "kernel",
@@ -81,10 +85,13 @@ impl DispersalTable {
         };
         match used {
             Use::Movement => warn_of_an_idle_exponent(&table, movement.as_ref()),
-            Use::Occupancy => warn_of_idle_keys(&table, movement.as_ref()),
+            Use::Occupancy => {
+                warn_of_idle_keys(&table, movement.as_ref());
+                refuse_crowding(&table);
+            }
         }
         table.finish();
-        Some(Self { movement: movement?, area_exponent: area_exponent?, place })
+        Some(Self { movement: movement?, area_exponent: area_exponent?, crowding: crowding?, place })
     }
 }
 
@@ -95,6 +102,15 @@ enum Use {
     Movement,
     /// patches that are colonised
     Occupancy,
+}
+
+/// Where nobody is counted nothing is crowded.
+fn refuse_crowding(table: &Table<'_>) {
+    for key in ["rises_with_crowding", "avoids_full"] {
+        if let Some(item) = table.item(key) {
+            item.refuse(table.document(), "no such key in an occupancy study, which counts nobody");
+        }
+    }
 }
 
 /// Without the kernel's own keys the others are still read, so that all that is missing is named at once.
@@ -225,6 +241,24 @@ mod tests {
         let (table, mistakes, _) = read(&format!("{KERNEL}settlement = 'open'\narea_exponent = -1"));
         assert!(table.is_none());
         assert_eq!(mistakes, ["dispersal.area_exponent = -1"]);
+    }
+
+    #[test]
+    fn crowding_is_read_and_its_mistakes_found() {
+        let shared = format!("{KERNEL}settlement = 'shared'\n");
+        let crowding = |keys: &str| read(&format!("{shared}{keys}")).0.unwrap().crowding;
+        assert!(crowding("").is_idle() && crowding("avoids_full = false").is_idle());
+        let said = crowding("rises_with_crowding = { exponent = 1.5, origin = 'marking' }\navoids_full = true");
+        assert_eq!(said, CrowdingResponse { emigration_exponent: Some(1.5), avoids_full: true });
+        for (keys, found) in [
+            ("rises_with_crowding = true", "dispersal.rises_with_crowding = true"),
+            ("rises_with_crowding = {}", "dispersal.rises_with_crowding.exponent is missing"),
+            ("rises_with_crowding = { exponent = 0 }", "dispersal.rises_with_crowding.exponent = 0"),
+            ("rises_with_crowding = { exponent = 1, power = 2 }", "dispersal.rises_with_crowding.power is not a key"),
+            ("avoids_full = 'yes'", "dispersal.avoids_full = 'yes'"),
+        ] {
+            assert_eq!(read(&format!("{shared}{keys}")).1, [found]);
+        }
     }
 
     #[test]

@@ -90,6 +90,7 @@ pub(crate) fn tallies() -> Tallies {
                 arrived_elsewhere: 48,
                 net_export: 40,
                 net_export_squares: 408,
+                removed: 0,
             },
             // Sums 1, 35, 0, 12; net export -8, -10, -6, -8.
             PatchTally {
@@ -106,6 +107,7 @@ pub(crate) fn tallies() -> Tallies {
                 arrived_elsewhere: 8,
                 net_export: -32,
                 net_export_squares: 264,
+                removed: 0,
             },
             // Sums 0, 6, 0, 5; net export 0, -1, 0, 1.
             PatchTally {
@@ -122,9 +124,11 @@ pub(crate) fn tallies() -> Tallies {
                 arrived_elsewhere: 1,
                 net_export: 0,
                 net_export_squares: 2,
+                removed: 0,
             },
         ],
         movers: vec![48, 8, 1],
+        removed: None,
     }
 }
 

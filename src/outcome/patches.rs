@@ -71,6 +71,8 @@ pub struct PatchRow {
     pub emigrants_per_year: f64,
     /// those who left and arrived elsewhere alive, less the immigrants, a year
     pub net_export_per_year: Estimate,
+    /// individuals taken out by removals, a year; `None` where the study has none
+    pub removed_per_year: Option<f64>,
     /// source, sink or neither
     pub role: Role,
     /// what the patch is to the structure of the network, where individuals disperse
@@ -113,7 +115,11 @@ pub(super) fn by_patch(
     debug_assert_eq!(landscape.patches.len(), starts.len());
     let effort = Effort { replicates: tallies.records.len() as u64, years: f64::from(tallies.horizon) };
     let patches = landscape.patches.iter().zip(&tallies.patches).zip(starts);
-    let rows = patches.map(|((patch, tally), start)| effort.row(patch, tally, *start));
+    let removes = tallies.removed.is_some();
+    let rows = patches.map(|((patch, tally), start)| PatchRow {
+        removed_per_year: removes.then(|| effort.yearly(tally.removed)),
+        ..effort.row(patch, tally, *start)
+    });
     let placed = |(position, row): (usize, PatchRow)| PatchRow {
         place: structure.map(|structure| PlaceInNetwork::new(structure, position)),
         ..row
@@ -145,6 +151,7 @@ impl Effort {
             immigrants_per_year: self.yearly(tally.immigrants),
             emigrants_per_year: self.yearly(tally.emigrants),
             net_export_per_year: net_export,
+            removed_per_year: None,
             role: Role::of(&net_export, mean_abundance.value),
             place: None,
         }

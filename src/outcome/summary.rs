@@ -33,6 +33,8 @@ pub struct Summary {
     pub median_time_to_extinction: Option<f64>,
     /// share of all emigrants that died on the way or landed nowhere; `None` if nobody emigrated
     pub lost_emigrants_share: Option<f64>,
+    /// individuals taken out by removals, a year; `None` where the study has none
+    pub removed_per_year: Option<Estimate>,
     /// replicates in which a count reached the largest that can be held and was stopped there
     pub saturated_replicates: u64,
     /// the customary target, where the horizon reaches that far
@@ -51,6 +53,7 @@ impl Summary {
             realised_growth: realised_growth(&tallies.records, tallies.horizon),
             median_time_to_extinction: median_time_to_extinction(replicates),
             lost_emigrants_share: lost_emigrants_share(tallies),
+            removed_per_year: removed_per_year(tallies),
             saturated_replicates: tallies.records.iter().filter(|record| record.saturated).count() as u64,
             customary: years.get(CUSTOMARY_YEARS as usize).map(|year| Customary {
                 persistence: year.persistence,
@@ -89,6 +92,13 @@ fn lost_emigrants_share(tallies: &Tallies) -> Option<f64> {
     };
     let (left, arrived) = (sum(|patch| patch.emigrants), sum(|patch| patch.arrived_elsewhere));
     (left > 0).then(|| left.saturating_sub(arrived) as f64 / left as f64)
+}
+
+fn removed_per_year(tallies: &Tallies) -> Option<Estimate> {
+    let removed = tallies.removed?;
+    let n = tallies.records.len() as u64;
+    let sums = Sums { n, sum: removed.sum.cast_signed(), squares: removed.squares };
+    Some(Estimate::mean(&sums, f64::from(tallies.horizon)))
 }
 
 #[cfg(test)]

@@ -50,14 +50,15 @@ impl<'a, T: Into<Cell<'a>>> From<Option<T>> for Cell<'a> {
     }
 }
 
-/// A column: its name, and how a row fills it.
+/// A column: its name, how a row fills it, and in which outcomes it stands.
 pub(super) struct Column<Row> {
     pub(super) name: &'static str,
     pub(super) cell: for<'a> fn(&'a Outcome, &'a Row) -> Cell<'a>,
+    pub(super) stands_in: fn(&Outcome) -> bool,
 }
 
 pub(super) const fn column<Row>(name: &'static str, cell: for<'a> fn(&'a Outcome, &'a Row) -> Cell<'a>) -> Column<Row> {
-    Column { name, cell }
+    Column { name, cell, stands_in: |_| true }
 }
 
 /// The columns of the table by year.
@@ -139,6 +140,10 @@ const BY_PATCH: &[Column<PatchRow>] = &[
     column("splits_network", |_, row| row.place.map(|place| place.splits).into()),
     column("metapopulation_capacity_share", |_, row| row.place.map(|place| place.capacity_share).into()),
     column("connectivity_loss_percent", |_, row| row.place.and_then(|place| place.connectivity_loss_percent).into()),
+    Column {
+        stands_in: |outcome| outcome.summary.removed_per_year.is_some(),
+        ..column("removed_per_year", |_, row: &PatchRow| row.removed_per_year.into())
+    },
 ];
 
 const BY_LINK: &[Column<LinkRow>] = &[

@@ -40,11 +40,12 @@ pub fn by_replicate(outcome: &Outcome, to: impl io::Write) -> io::Result<()> {
 }
 
 fn write<Row>(outcome: &Outcome, columns: &[Column<Row>], rows: &[Row], to: impl io::Write) -> io::Result<()> {
+    let columns: Vec<_> = columns.iter().filter(|column| (column.stands_in)(outcome)).collect();
     let mut table = csv::Writer::from_writer(to);
     table.write_record(columns.iter().map(|column| column.name))?;
     let mut text = String::new();
     for row in rows {
-        for column in columns {
+        for column in &columns {
             text.clear();
             spell((column.cell)(outcome, row), &mut text);
             table.write_field(&text)?;

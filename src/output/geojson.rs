@@ -68,7 +68,8 @@ fn properties<Row>(outcome: &Outcome, columns: &[Column<Row>], row: &Row) -> Jso
         Cell::Flag(flag) => flag.into(),
         Cell::Empty => JsonValue::Null,
     };
-    columns.iter().map(|column| (column.name.to_owned(), value((column.cell)(outcome, row)))).collect()
+    let columns = columns.iter().filter(|column| (column.stands_in)(outcome));
+    columns.map(|column| (column.name.to_owned(), value((column.cell)(outcome, row)))).collect()
 }
 
 /// The same geometry with its rings wound by the right-hand rule (RFC 7946, section 3.1.6).

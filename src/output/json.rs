@@ -88,6 +88,8 @@ struct Answer {
     realised_growth: Option<f64>,
     median_time_to_extinction: Option<f64>,
     lost_emigrants_share: Option<f64>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    removed_per_year: Option<Interval>,
     saturated_replicates: u64,
     customary_target: Option<Target>,
     source_sink_margin: f64,
@@ -188,6 +190,7 @@ impl Answer {
             realised_growth: summary.realised_growth,
             median_time_to_extinction: summary.median_time_to_extinction,
             lost_emigrants_share: summary.lost_emigrants_share,
+            removed_per_year: summary.removed_per_year.map(Interval::from),
             saturated_replicates: summary.saturated_replicates,
             customary_target: summary.customary.map(Target::from),
             source_sink_margin: ROLE_MARGIN,

@@ -10,6 +10,7 @@ pub mod geojson;
 pub mod json;
 mod life_words;
 mod occupancy;
+mod rules;
 mod terminal;
 #[cfg(test)]
 mod tests;

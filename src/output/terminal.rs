@@ -53,6 +53,9 @@ fn facts(outcome: &Outcome, account: &Account) -> String {
     if let Some(share) = summary.lost_emigrants_share {
         facts.push(("emigrants lost", format!("{:.1} % died on the way or landed nowhere", 100.0 * share)));
     }
+    if let Some(removed) = &summary.removed_per_year {
+        facts.push(("removed", format!("{} individuals a year", mean(removed))));
+    }
     if let Some(customary) = &summary.customary {
         facts.push(("customary target", customary_words(customary)));
     }

@@ -9,7 +9,7 @@ use ::geojson::{FeatureCollection, GeoJson, GeometryValue};
 use serde_json::Value;
 
 use super::*;
-use crate::engine::PatchTally;
+use crate::engine::{PatchTally, RemovedTally};
 use crate::mistake::Place;
 use crate::outcome::example::{landscape, network, outcome, tallies, threshold};
 use crate::outcome::{Estimate, Outcome, PatchRow};
@@ -213,4 +213,22 @@ fn an_unfinished_run_says_so_first() {
     }))
     .unwrap();
     assert_eq!(json["replicates"], serde_json::json!({"asked": 1000, "done": 4, "complete": false}));
+}
+
+/// By hand: 9, 4, 3 and 0 in four replicates of four years are 1 a year, 12 of the first patch 0.75 a year.
+#[test]
+fn what_is_removed_is_told_where_a_study_removes() {
+    let mut tallies = tallies();
+    tallies.removed = Some(RemovedTally { sum: 16, squares: 81 + 16 + 9 });
+    tallies.patches[0].removed = 12;
+    tallies.patches[2].removed = 4;
+    let outcome = Outcome::from_tallies(&tallies, &landscape(), &network(), &[12, 6, 2], None, None).unwrap();
+    let table = written(|to| csv::by_patch(&outcome, to));
+    let ends: Vec<&str> = table.lines().map(|line| line.rsplit(',').next().unwrap()).collect();
+    assert_eq!(ends, ["removed_per_year", "0.75", "0", "0.25"]);
+    let map = written(|to| geojson::by_patch(&outcome, &landscape(), to));
+    assert!(map.contains("\"removed_per_year\":0.75"), "{map}");
+    let document: Value = serde_json::from_str(&written(|to| json::write(&outcome, &account(), to))).unwrap();
+    assert_eq!(document["answer"]["removed_per_year"]["value"], 1.0);
+    assert!(summary(&outcome, &account()).contains("removed "), "{}", summary(&outcome, &account()));
 }

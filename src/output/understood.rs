@@ -3,6 +3,7 @@
 use serde::Serialize;
 
 use super::life_words;
+use super::rules::{crowding_in_words, record_in_words, removal_in_words};
 use super::terminal::{Side, lines};
 use super::threats::Threats;
 use super::words::{amount, counted, grouped};
@@ -30,6 +31,8 @@ pub struct Understood {
     species: Species,
     weather: String,
     threats: Option<Threats>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    removals: Vec<String>,
     warnings: Vec<String>,
     #[serde(skip)]
     head: String,
@@ -51,6 +54,8 @@ struct Landscape {
 #[derive(Debug, Serialize)]
 struct Network {
     links: usize,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    crowding: Vec<String>,
     components: usize,
     median_link_km: Option<f64>,
     mean_lost_share: f64,
@@ -113,6 +118,7 @@ impl Understood {
             },
             weather: weather(prepared),
             threats: Threats::new(prepared),
+            removals: prepared.removals.iter().map(removal_in_words).collect(),
             warnings: warnings.iter().map(Mistake::to_string).collect(),
             head: head(settings),
         }
@@ -136,7 +142,15 @@ impl Understood {
             format!("{}\n", self.weather),
         ];
         parts.extend(self.threats.as_ref().map(Threats::text));
-        parts.join("\n")
+        parts.join("\n") + &self.removals_text()
+    }
+
+    fn removals_text(&self) -> String {
+        if self.removals.is_empty() {
+            return String::new();
+        }
+        let lines: Vec<String> = self.removals.iter().map(|removal| format!("  {removal}\n")).collect();
+        format!("\nRemovals, each year after dispersal\n{}", lines.concat())
     }
 
     fn network_text(&self) -> String {
@@ -201,6 +215,7 @@ impl Network {
         lengths.sort_unstable_by(f64::total_cmp);
         Some(Self {
             links: network.links.len(),
+            crowding: crowding_in_words(dispersal.as_ref()?.crowding),
             components: structure.graph.n_components,
             median_link_km: (!lengths.is_empty()).then(|| crate::num::quantile(&lengths, 0.5)),
             mean_lost_share: network.lost.iter().sum::<f64>() / network.lost.len() as f64,
@@ -217,7 +232,7 @@ impl Network {
 
     fn text(&self) -> String {
         let median = self.median_link_km.map(|km| format!(", half of them within {km:.2} km")).unwrap_or_default();
-        let rows = vec![
+        let mut rows = vec![
             row(
                 "links",
                 &format!("{}{median}; {}", grouped(self.links as u64), counted(self.components as u64, "component")),
@@ -242,6 +257,9 @@ impl Network {
                 ),
             ),
         ];
+        for (position, words) in self.crowding.iter().enumerate() {
+            rows.insert(1 + position, row("where it is crowded", words));
+        }
         block("Network", rows)
     }
 }
@@ -404,11 +422,13 @@ fn density_in_words(life_history: &LifeHistory) -> String {
 pub(super) fn weather(prepared: &Prepared) -> String {
     if prepared.life_history.varies() {
         let environment = &prepared.environment;
+        let recorded = environment.recorded.as_ref().map(record_in_words);
         let between_patches = match environment.correlation.as_ref().map(|said| said.value) {
             Some(Correlation::Reach { reach_km, nugget }) if nugget > 0.0 => {
                 format!("{} exp(-d / {reach_km} km)", short(1.0 - nugget))
             }
             Some(Correlation::Reach { reach_km, .. }) => format!("exp(-d / {reach_km} km)"),
+            _ if recorded.is_some() => "1: all patches have the recorded years".to_owned(),
             Some(Correlation::Full) => "1: all patches have the same years".to_owned(),
             Some(Correlation::None) | None => "0: every patch has years of its own".to_owned(),
         };
@@ -417,7 +437,11 @@ pub(super) fn weather(prepared: &Prepared) -> String {
         if prepared.life_history.occupancy.is_none() {
             rows.push(row("of survival with fecundity", &short(environment.between_rates)));
         }
-        rows.push(row("of a year with the next", &short(environment.autocorrelation)));
+        if environment.between_stages < 1.0 {
+            rows.push(row("of stages with each other", &short(environment.between_stages)));
+        }
+        let next = recorded.unwrap_or_else(|| short(environment.autocorrelation));
+        rows.push(row("of a year with the next", &next));
         block("Weather", rows).trim_end().to_owned()
     } else {
         "Weather: no rate varies between years".to_owned()

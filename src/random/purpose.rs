@@ -6,9 +6,9 @@
 /// given out again.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Purpose {
-    /// the weather of a rate group, shared with neighbours
+    /// the weather of a rate group, shared with neighbours; beyond the groups, that of each group of each stage
     Weather(u32),
-    /// the weather of a rate group that is a patch's own
+    /// the same that is a patch's own
     OwnWeather(u32),
     /// who of a stage survives, and advances
     Fates(u32),
@@ -38,6 +38,10 @@ pub enum Purpose {
     Heterogeneity,
     /// whether a patch that is full or empty is full at the next census
     Turnover,
+    /// who is taken by a removal, by the key of its name
+    Removal(u32),
+    /// at which year of a record a block of years begins
+    RecordedYears,
 }
 
 impl Purpose {
@@ -59,6 +63,8 @@ impl Purpose {
             Self::Litter => (32, 0),
             Self::Heterogeneity => (33, 0),
             Self::Turnover => (40, 0),
+            Self::Removal(removal) => (50, removal),
+            Self::RecordedYears => (51, 0),
         };
         number << 32 | index as u64
     }

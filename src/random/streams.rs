@@ -225,6 +225,8 @@ mod tests {
             Purpose::Leaving(0),
             Purpose::Destinations(0),
             Purpose::Surplus,
+            Purpose::Removal(0),
+            Purpose::RecordedYears,
         ];
         let first: BTreeSet<u64> = codes.into_iter().map(|purpose| year.network().draw(purpose).word()).collect();
         assert_eq!(first.len(), codes.len());

@@ -122,6 +122,16 @@ fn three_patches_with_rescue() {
     ]);
 }
 
+/// Rescue acts first, then a catastrophe: a full patch stays so with (1 - E (1 - C)) times the survival left. The chances of
+/// the first year with rescue and without a catastrophe are those above; one of 0.3 a year that leaves half takes 0.15 of them.
+#[test]
+fn a_catastrophe_bears_on_those_who_would_have_stayed() {
+    let mut network = three("three with rescue and storms", true);
+    network.weather =
+        "\n[[catastrophe]]\nname = \"storm\"\nyearly_probability = 0.3\nstrikes = \"each patch\"\nsurvival = 0.5\n";
+    network.run(1).occupied_at_end(&[0.85 * 0.909_313, 0.85 * 0.848_852, 0.85 * 0.624_152]);
+}
+
 /// Mean years to the extinction of the network. Of the long-run yearly survival 0.926 hardly 1e-13 is left after 400
 /// years, so that the horizon cuts nothing off; the sd is the sample's.
 #[test]

@@ -35,6 +35,10 @@ pub(crate) struct Case {
     pub(crate) tables: String,
     /// `arrivals[i][j]`: probability that an emigrant of i arrives alive in j; empty where the tables say it
     pub(crate) arrivals: Vec<Vec<f64>>,
+    /// keys of `[dispersal]` beside the measured table
+    pub(crate) dispersal_keys: &'static str,
+    /// files beside the study, by name
+    pub(crate) files: Vec<(&'static str, String)>,
     /// what stands in the study
     pub(crate) quasi_extinction: Option<String>,
     pub(crate) replicates: u32,
@@ -59,6 +63,8 @@ impl Case {
             stages: stages.to_vec(),
             tables: tables.to_owned(),
             arrivals: Vec::new(),
+            dispersal_keys: "",
+            files: Vec::new(),
             quasi_extinction: None,
             replicates: REPLICATES,
         }
@@ -67,6 +73,18 @@ impl Case {
     /// Adds a measured dispersal table.
     pub(crate) fn arriving(mut self, arrivals: &[&[f64]]) -> Self {
         self.arrivals = arrivals.iter().map(|row| row.to_vec()).collect();
+        self
+    }
+
+    /// Adds keys of `[dispersal]` beside the measured table.
+    pub(crate) fn dispersing(mut self, keys: &'static str) -> Self {
+        self.dispersal_keys = keys;
+        self
+    }
+
+    /// Adds a file beside the study.
+    pub(crate) fn file(mut self, name: &'static str, text: String) -> Self {
+        self.files.push((name, text));
         self
     }
 
@@ -106,7 +124,11 @@ impl Case {
         study.push_str(&self.tables);
         if !self.arrivals.is_empty() {
             study.push_str("\n[dispersal]\nkernel = { table = \"arrivals.csv\" }\n");
+            study.push_str(self.dispersal_keys);
             write("arrivals.csv", &self.arrival_table());
+        }
+        for (name, text) in &self.files {
+            write(name, text);
         }
         write("study.toml", &study);
         match prepare(&folder.path().join("study.toml"), Overrides::default()) {
@@ -199,6 +221,21 @@ impl Seen {
         self.mean(&format!("total at {census}"), sample_mean(&totals), mean, sd);
         let squares: Vec<f64> = totals.iter().map(|total| (total - mean) * (total - mean)).collect();
         self.mean(&format!("variance at {census}"), sample_mean(&squares), sd * sd, sample_sd(&squares));
+    }
+
+    /// Extinction and total at `census` against the chance of every total.
+    pub(crate) fn distribution(&self, census: usize, chances: impl Iterator<Item = (usize, f64)>) {
+        let (mut empty, mut mass, mut mean, mut square) = (0.0, 0.0, 0.0, 0.0);
+        for (total, chance) in chances {
+            let total = total as f64;
+            empty += if total > 0.0 { 0.0 } else { chance };
+            mass += chance;
+            mean += chance * total;
+            square += chance * total * total;
+        }
+        assert!((mass - 1.0_f64).abs() < 1e-9, "{}: the chain loses mass: {mass}", self.name);
+        self.extinct(census, empty);
+        self.total(census, mean, (square - mean * mean).sqrt());
     }
 
     /// P(patch occupied) at the last census.

@@ -15,7 +15,7 @@ const SEED: u64 = 5_005;
 
 fn table(correlation: Correlation, between_rates: f64, autocorrelation: f64) -> EnvironmentTable {
     let correlation = Some(Said { value: correlation, place: Place::Call, words: String::new() });
-    EnvironmentTable { correlation, between_rates, autocorrelation }
+    EnvironmentTable { correlation, between_rates, autocorrelation, ..EnvironmentTable::default() }
 }
 
 fn keys(n: usize) -> Vec<u64> {

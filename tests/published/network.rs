@@ -9,8 +9,8 @@ use eyot::landscape::{CapacityOverTime, Crs, Landscape, Patch, Start};
 use eyot::mistake::Place;
 use eyot::network::kernel::{Exponential, ExponentialPower, Gaussian, Lognormal, Scale, TwoDt};
 use eyot::network::{
-    Capacity, Connectivity, DispersalTable, Distances, Graph, Kernel, KernelDispersal, Movement, Network, Settlement,
-    Sparse, Structure,
+    Capacity, Connectivity, CrowdingResponse, DispersalTable, Distances, Graph, Kernel, KernelDispersal, Movement,
+    Network, Settlement, Sparse, Structure,
 };
 use eyot::num;
 use eyot::study::Document;
@@ -118,7 +118,12 @@ impl Distances for AllPairs<'_> {
 fn table(kernel: &Kernel, settlement: Settlement, tail: f64) -> DispersalTable {
     let movement =
         KernelDispersal { kernel: kernel.clone(), settlement, path_mortality_per_km: 0.0, max_km: None, tail };
-    DispersalTable { movement: Movement::Kernel(movement), area_exponent: 1.0, place: Place::Call }
+    DispersalTable {
+        movement: Movement::Kernel(movement),
+        area_exponent: 1.0,
+        crowding: CrowdingResponse::default(),
+        place: Place::Call,
+    }
 }
 
 fn with_mortality(mut table: DispersalTable, per_km: f64) -> DispersalTable {
