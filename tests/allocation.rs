@@ -71,6 +71,12 @@ fn study(horizon: u32, life_history: &str) -> Prepared {
         fecundity = 0.4
         "#
     );
+    // A model of counts has growth in place of survival and fecundity.
+    let text = if life_history.contains("growth") {
+        text.replace("survival = 0.7", "growth = 0.7").replace("fecundity = 0.4", "growth = 0.4")
+    } else {
+        text
+    };
     fs::write(folder.path().join("study.toml"), text).expect("a temporary file can be written");
     match prepare(&folder.path().join("study.toml"), Overrides::default()) {
         Ok(checked) => checked.value,

@@ -120,7 +120,7 @@ fn litters() {
     let too_wide = ["life_history.all.fecundity.sd = 0.65", "below 0.65", "a share of 0.5 breeds"];
     assert_refused(&one_stage(litter, "{ mean = 0.65, sd = 0.65 }"), &too_wide);
     assert_refused(&one_stage(litter, "{ mean = 1.3, sd = 0.01 }"), &["fecundity.sd = 0.01", "below 0:"]);
-    assert_refused(&one_stage(litter, "-1"), &["life_history.all.fecundity = -1", "0 or above"]);
+    assert_refused(&one_stage(litter, "-1"), &["life_history.all.fecundity = -1", "from 0 to"]);
     let matrix = |keys: &str| {
         format!("kind = \"stages\"\ndensity_dependence = {{ form = \"none\" }}\n{litter}\nmatrix = [[1.4]]\n{keys}\n")
     };

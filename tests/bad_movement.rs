@@ -142,7 +142,7 @@ fn weather_in_detail() {
         ("{ use = \"resample\" }", SOUND, vec!["recorded.table is missing", "year and deviate"]),
         ("{ table = \"years.csv\" }", SOUND, vec!["recorded.use is missing", "replay"]),
         ("{ table = \"years.csv\", use = \"resampl\" }", SOUND, vec!["use = \"resampl\"", "write \"resample\""]),
-        ("{ table = \"year.csv\", use = \"resample\" }", SOUND, vec!["year.csv", "cannot be"]),
+        ("{ table = \"year.csv\", use = \"resample\" }", SOUND, vec!["year.csv", "there is none"]),
         ("{ table = \"years.csv\", use = \"replay\" }", SOUND, vec!["at least 20 years", "it holds 4", "resample"]),
         ("{ table = \"years.csv\", use = \"replay\", block_years = 2 }", SOUND, vec!["block_years = 2", "replayed"]),
         ("{ table = \"years.csv\", use = \"resample\", block_years = 5 }", SOUND, vec!["block_years = 5", "at most 4"]),

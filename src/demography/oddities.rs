@@ -21,7 +21,7 @@ pub(super) fn warn(table: &Table<'_>, life_history: &LifeHistory) {
             odd.push(("no stage has fecundity".to_owned(), "nobody breeds, so that numbers can only fall".to_owned()));
         }
     }
-    if !life_history.varies() {
+    if life_history.occupancy.is_none() && !life_history.varies() {
         let note = "every year is an average year, which makes persistence look better than it is";
         odd.push(("no vital rate varies from year to year".to_owned(), note.to_owned()));
     }

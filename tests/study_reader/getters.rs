@@ -65,7 +65,7 @@ fn lists_are_refused_item_by_item() {
     assert_eq!(
         told(text, read),
         [
-            "1:11 n.2 = 2 | a number from 0 to 1 | if it is a percentage, divide it by 100",
+            "1:11 n.2 = 2 | a number from 0 to 1",
             "1:14 n.3 = 'x' | a number from 0 to 1",
             "2:11 t.2 = 1 | a list of texts in quotation marks",
             "3:10 r.1.2 = 0 | a number above 0",

@@ -177,6 +177,9 @@ fn read_form(table: &Table<'_>, counts: bool) -> Option<Said<String>> {
         return Some(form);
     }
     let mut mistake = form.mistake(format!("one of {}", forms.join(", ")));
+    if form.value == theta_logistic::FORM {
+        mistake = mistake.advise("that form is for a life history of kind = \"counts\"");
+    }
     if let Some(near) = nearest_word(&form.value, forms.iter().copied()) {
         mistake = mistake.advise(format!("write \"{near}\""));
     }
