@@ -123,6 +123,7 @@ pub(super) fn compile(
         threshold: settings.quasi_extinction.as_ref().map(|threshold| Threshold {
             below: u64::from(threshold.below),
             stages: if counted_stages.is_empty() { (0..n_stages).collect() } else { counted_stages },
+            in_each_patch: threshold.in_each_patch.map_or(0, u64::from),
         }),
     })
 }

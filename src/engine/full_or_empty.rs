@@ -21,6 +21,12 @@ pub(super) fn check(document: &Document, settings: Option<&Settings>, has_disper
     if !has_dispersal && !root.has("dispersal") {
         root.missing("dispersal", "a table [dispersal], whose kernel says how far colonists come");
     }
+    let threshold = settings.and_then(|settings| settings.quasi_extinction.as_ref());
+    if threshold.is_some_and(|threshold| threshold.in_each_patch.is_some()) {
+        let expected = "no such key in an occupancy study, where a patch is full or empty";
+        let place = document.root().place().clone();
+        document.mistake(Mistake::new(place, "quasi_extinction.in_each_patch", expected));
+    }
     for stage in settings.iter().flat_map(|settings| &settings.quasi_extinction).flat_map(|threshold| &threshold.stages)
     {
         let mistake = stage.mistake("no stages in an occupancy study, whose threshold counts occupied patches");

@@ -19,6 +19,8 @@ pub struct Threshold {
     pub below: u64,
     /// the stages that are counted, by position
     pub stages: Vec<usize>,
+    /// a patch is quasi-extinct where a census counts fewer than this in it; 0 where that was not asked for
+    pub in_each_patch: u64,
 }
 
 /// How numbers press on rates.

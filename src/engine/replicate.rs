@@ -13,6 +13,8 @@ use crate::random::ReplicateKey;
 pub(super) struct Own {
     /// individuals at the last census
     now: u64,
+    /// the fewest at any census, the first included
+    fewest: u64,
     abundance: u64,
     years_occupied: u32,
     local_extinctions: u32,
@@ -30,10 +32,12 @@ impl Own {
         self.recolonisations += u32::from(self.now == 0 && here > 0);
         self.years_occupied += u32::from(here > 0);
         self.abundance += here;
+        self.fewest = self.fewest.min(here);
         self.now = here;
     }
 
-    fn add_to(&self, tally: &mut PatchTally) {
+    /// `threshold` is that of quasi-extinction in a patch, 0 for none.
+    fn add_to(&self, tally: &mut PatchTally, threshold: u64) {
         let square = |number: u64| u128::from(number) * u128::from(number);
         let net_export = i128::from(self.arrived_elsewhere) - i128::from(self.immigrants);
         tally.occupied_at_end += u64::from(self.now > 0);
@@ -48,6 +52,7 @@ impl Own {
         tally.emigrants += self.emigrants;
         tally.arrived_elsewhere += self.arrived_elsewhere;
         tally.removed += self.removed;
+        tally.quasi_extinct += u64::from(self.fewest < threshold);
         tally.net_export += net_export;
         tally.net_export_squares += net_export.unsigned_abs().pow(2);
     }
@@ -110,8 +115,9 @@ impl State {
         for year in 0..model.horizon {
             year::step(model, self, year);
         }
+        let threshold = model.threshold.as_ref().map_or(0, |threshold| threshold.in_each_patch);
         for (own, tally) in self.own.iter().zip(&mut self.tallies.patches) {
-            own.add_to(tally);
+            own.add_to(tally, threshold);
         }
         if !model.removals.is_empty() {
             let removed = self.own.iter().map(|own| own.removed).sum();
@@ -138,7 +144,7 @@ impl State {
         let mut occupied = 0;
         for (counts, own) in self.counts.chunks(model.n_stages).zip(&mut self.own) {
             let here: u64 = counts.iter().map(|count| u64::from(*count)).sum();
-            *own = Own { now: here, ..Own::default() };
+            *own = Own { now: here, fewest: here, ..Own::default() };
             total += here;
             occupied += u32::from(here > 0);
         }

@@ -42,6 +42,8 @@ pub struct PatchTally {
     pub arrived_elsewhere: u64,
     /// those taken out by removals
     pub removed: u64,
+    /// replicates in which it is below its own threshold of quasi-extinction at least once, census 0 included
+    pub quasi_extinct: u64,
     /// each replicate's (arrived elsewhere - immigrants), summed
     pub net_export: i128,
     /// the squares of the same, summed
@@ -159,6 +161,7 @@ impl PatchTally {
         self.emigrants += more.emigrants;
         self.arrived_elsewhere += more.arrived_elsewhere;
         self.removed += more.removed;
+        self.quasi_extinct += more.quasi_extinct;
         self.net_export += more.net_export;
         self.net_export_squares += more.net_export_squares;
     }

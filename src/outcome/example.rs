@@ -91,6 +91,7 @@ pub(crate) fn tallies() -> Tallies {
                 net_export: 40,
                 net_export_squares: 408,
                 removed: 0,
+                quasi_extinct: 0,
             },
             // Sums 1, 35, 0, 12; net export -8, -10, -6, -8.
             PatchTally {
@@ -108,6 +109,7 @@ pub(crate) fn tallies() -> Tallies {
                 net_export: -32,
                 net_export_squares: 264,
                 removed: 0,
+                quasi_extinct: 0,
             },
             // Sums 0, 6, 0, 5; net export 0, -1, 0, 1.
             PatchTally {
@@ -125,6 +127,7 @@ pub(crate) fn tallies() -> Tallies {
                 net_export: 0,
                 net_export_squares: 2,
                 removed: 0,
+                quasi_extinct: 0,
             },
         ],
         movers: vec![48, 8, 1],
@@ -134,7 +137,7 @@ pub(crate) fn tallies() -> Tallies {
 
 pub(crate) fn threshold() -> QuasiExtinction {
     let adult = Said { value: "adult".to_owned(), place: Place::Call, words: String::new() };
-    QuasiExtinction { below: 5, stages: vec![adult] }
+    QuasiExtinction { below: 5, stages: vec![adult], in_each_patch: None }
 }
 
 /// A structure of round numbers: the network's own graph, two shares and a loss each.

@@ -76,6 +76,7 @@ impl Outcome {
         if tallies.records.is_empty() {
             return None;
         }
+        let in_each_patch = quasi_extinction.is_some_and(|threshold| threshold.in_each_patch.is_some());
         let by_year = curve::by_year(tallies, quasi_extinction.is_some());
         let by_replicate: Vec<ReplicateRow> = tallies.records.iter().map(ReplicateRow::from).collect();
         Some(Self {
@@ -83,7 +84,7 @@ impl Outcome {
             counted: Counted::Individuals,
             quasi_extinction: quasi_extinction.cloned(),
             summary: Summary::new(tallies, &by_year, &by_replicate),
-            by_patch: patches::by_patch(tallies, landscape, starts, structure.as_ref()),
+            by_patch: patches::by_patch(tallies, landscape, starts, structure.as_ref(), in_each_patch),
             by_link: links::by_link(tallies, network, structure.as_ref()),
             by_year,
             by_replicate,

@@ -73,6 +73,8 @@ pub struct PatchRow {
     pub net_export_per_year: Estimate,
     /// individuals taken out by removals, a year; `None` where the study has none
     pub removed_per_year: Option<f64>,
+    /// probability of being below the patch's own threshold at least once, where there is one
+    pub quasi_extinction: Option<Estimate>,
     /// source, sink or neither
     pub role: Role,
     /// what the patch is to the structure of the network, where individuals disperse
@@ -110,6 +112,7 @@ pub(super) fn by_patch(
     landscape: &Landscape,
     starts: &[u64],
     structure: Option<&Structure>,
+    has_threshold: bool,
 ) -> Vec<PatchRow> {
     debug_assert_eq!(landscape.patches.len(), tallies.patches.len());
     debug_assert_eq!(landscape.patches.len(), starts.len());
@@ -118,6 +121,7 @@ pub(super) fn by_patch(
     let removes = tallies.removed.is_some();
     let rows = patches.map(|((patch, tally), start)| PatchRow {
         removed_per_year: removes.then(|| effort.yearly(tally.removed)),
+        quasi_extinction: has_threshold.then(|| Estimate::proportion(tally.quasi_extinct, effort.replicates)),
         ..effort.row(patch, tally, *start)
     });
     let placed = |(position, row): (usize, PatchRow)| PatchRow {
@@ -152,6 +156,7 @@ impl Effort {
             emigrants_per_year: self.yearly(tally.emigrants),
             net_export_per_year: net_export,
             removed_per_year: None,
+            quasi_extinction: None,
             role: Role::of(&net_export, mean_abundance.value),
             place: None,
         }

@@ -144,6 +144,18 @@ const BY_PATCH: &[Column<PatchRow>] = &[
         stands_in: |outcome| outcome.summary.removed_per_year.is_some(),
         ..column("removed_per_year", |_, row: &PatchRow| row.removed_per_year.into())
     },
+    Column {
+        stands_in: has_patch_threshold,
+        ..column("quasi_extinction", |_, row: &PatchRow| row.quasi_extinction.map(|estimate| estimate.value).into())
+    },
+    Column {
+        stands_in: has_patch_threshold,
+        ..column("quasi_extinction_low", |_, row: &PatchRow| row.quasi_extinction.map(|estimate| estimate.low).into())
+    },
+    Column {
+        stands_in: has_patch_threshold,
+        ..column("quasi_extinction_high", |_, row: &PatchRow| row.quasi_extinction.map(|estimate| estimate.high).into())
+    },
 ];
 
 const BY_LINK: &[Column<LinkRow>] = &[
@@ -163,6 +175,10 @@ const BY_REPLICATE: &[Column<ReplicateRow>] = &[
     column("abundance_at_end", |_, row| row.abundance_at_end.into()),
     column("occupied_at_end", |_, row| row.occupied_at_end.into()),
 ];
+
+fn has_patch_threshold(outcome: &Outcome) -> bool {
+    outcome.quasi_extinction.as_ref().is_some_and(|threshold| threshold.in_each_patch.is_some())
+}
 
 pub(super) fn patch_name(outcome: &Outcome, position: u32) -> Cell<'_> {
     outcome.by_patch[position as usize].patch.as_str().into()

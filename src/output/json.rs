@@ -53,6 +53,8 @@ struct Document<'a> {
 struct Threshold<'a> {
     below: u32,
     stages: Vec<&'a str>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    in_each_patch: Option<u32>,
 }
 
 #[derive(Serialize)]
@@ -160,6 +162,7 @@ fn document<'a>(outcome: &'a Outcome, account: &'a Account) -> Document<'a> {
         quasi_extinction: outcome.quasi_extinction.as_ref().map(|threshold| Threshold {
             below: threshold.below,
             stages: threshold.stages.iter().map(|stage| stage.value.as_str()).collect(),
+            in_each_patch: threshold.in_each_patch,
         }),
         replicates: Replicates { asked, precision, done: outcome.replicates_done(), complete: account.complete },
         inputs: account.inputs.iter().map(|input| Input { path: &input.path, sha256: &input.sha256 }).collect(),

@@ -22,6 +22,8 @@ pub struct QuasiExtinction {
     pub below: u32,
     /// the stages that are counted, by name; empty means all
     pub stages: Vec<Said<String>>,
+    /// a patch is quasi-extinct where a census counts fewer than this in it, all stages together
+    pub in_each_patch: Option<u32>,
 }
 
 /// The settings at the top of a study.
@@ -109,12 +111,20 @@ fn read_quasi_extinction(root: &Table<'_>) -> Option<QuasiExtinction> {
                     "at least one stage; leave the key out to count all",
                 );
             }
+            let in_each_patch = table.whole("in_each_patch", 1, most);
+            let is_right = table.has("in_each_patch") == in_each_patch.is_some();
             table.finish();
-            Some(QuasiExtinction { below: u32::try_from(below?.value).ok()?, stages: stages.unwrap_or_default() })
+            let threshold = QuasiExtinction {
+                below: u32::try_from(below?.value).ok()?,
+                stages: stages.unwrap_or_default(),
+                in_each_patch: in_each_patch.and_then(|said| u32::try_from(said.value).ok()),
+            };
+            is_right.then_some(threshold)
         }
         super::table::Item::Number(_) => {
             let below = root.whole(KEY, 1, most)?;
-            Some(QuasiExtinction { below: u32::try_from(below.value).ok()?, stages: Vec::new() })
+            let below = u32::try_from(below.value).ok()?;
+            Some(QuasiExtinction { below, stages: Vec::new(), in_each_patch: None })
         }
         other => {
             other.refuse(

@@ -37,6 +37,17 @@ fn one_patch() {
     seen.occupied_at_end(&[0.114_200]);
 }
 
+/// In one patch the patch's own threshold is the network's: the same exact numbers.
+#[test]
+fn a_threshold_in_each_patch() {
+    let life = one_stage(0.6, 0.45, "poisson", "ceiling");
+    let mut case = Case::new("a threshold in each patch", vec![patch(10.0, &[5]), patch(10.0, &[2])], &["all"], &life);
+    case.quasi_extinction = Some("{ below = 1, in_each_patch = 3 }".to_owned());
+    let seen = case.run(20);
+    seen.probability("patch 1 below 3 by 20", seen.tallies.patches[0].quasi_extinct, 0.624_701);
+    assert_eq!(seen.tallies.patches[1].quasi_extinct, u64::from(crate::support::REPLICATES), "it starts below 3");
+}
+
 #[test]
 fn at_most_one_young() {
     let life = one_stage(0.6, 0.45, "at most one", "ceiling");

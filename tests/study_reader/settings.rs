@@ -27,7 +27,7 @@ fn settings_read_what_is_there() {
     assert!(document.is_clean());
     assert_eq!((settings.title.as_str(), settings.seed, settings.horizon), ("a", 1, 50));
     assert_eq!((settings.effort, settings.generation_years), (Effort::Replicates(10), Some(2.5)));
-    assert_eq!(settings.quasi_extinction, Some(QuasiExtinction { below: 20, stages: Vec::new() }));
+    assert_eq!(settings.quasi_extinction, Some(QuasiExtinction { below: 20, stages: Vec::new(), in_each_patch: None }));
 
     let document = parse("title='a'\nseed=1\nhorizon=5\nprecision=0.01\nquasi_extinction={below=2,stages=['b','a']}");
     let settings = Settings::read(&document.root()).unwrap();
@@ -81,7 +81,7 @@ fn quasi_extinction_counts_stages_that_are_there_once() {
     );
     assert_eq!(
         told(&of("{ below = 1, stagse = ['a'] }"), read),
-        ["5:33 quasi_extinction.stagse is not a key | one of: below, stages | write stages"]
+        ["5:33 quasi_extinction.stagse is not a key | one of: below, in_each_patch, stages | write stages"]
     );
     let document = parse(&of("{ below = 1, stages = ['a', 'a'] }"));
     let settings = Settings::read(&document.root()).unwrap();
