@@ -7,3 +7,4 @@ mod geodesy;
 mod intervals;
 mod network;
 mod samplers;
+mod whole_program;
