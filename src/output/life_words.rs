@@ -13,10 +13,12 @@ pub(super) fn allee_effect(prepared: &Prepared) -> Vec<String> {
     let acts_on = if life_history.kind == "counts" { "growth" } else { "fecundity" };
     let names: Vec<&str> = effect.breeders.iter().map(|stage| life_history.stages[*stage].name.as_str()).collect();
     let half_at = effect.half_at;
-    let formula = format!(
-        "{acts_on} times N / (N + {half_at}), N being a patch's individuals of {} (Dennis 1989)",
-        names.join(", ")
-    );
+    let whom = if names.len() == life_history.stages.len() {
+        "individuals".to_owned()
+    } else {
+        format!("individuals of {}", names.join(", "))
+    };
+    let formula = format!("{acts_on} times N / (N + {half_at}), N being a patch's {whom} (Dennis 1989)");
     vec![formula, balance_in_words(life_history, &prepared.landscape.patches)]
 }
 

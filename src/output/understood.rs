@@ -182,7 +182,7 @@ impl Landscape {
     }
 
     fn text(&self) -> String {
-        let rows = vec![
+        let mut rows = vec![
             row("patches", &format!("{}, in {}", grouped(self.patches as u64), self.coordinates)),
             row(
                 "extent",
@@ -241,7 +241,6 @@ impl Network {
                 "emigrants lost",
                 &format!("{:.1} % die on the way or land nowhere, mean over patches", 100.0 * self.mean_lost_share),
             ),
-            row("weakest links cut", &format!("at most {:.4} % of those who land", 100.0 * self.largest_cut_share)),
             row("patches that hold it together", &names(&self.patches_whose_loss_splits)),
             row("links that hold it together", &names(&self.links_whose_loss_splits)),
             row(
@@ -259,6 +258,10 @@ impl Network {
         ];
         for (position, words) in self.crowding.iter().enumerate() {
             rows.insert(1 + position, row("where it is crowded", words));
+        }
+        if self.largest_cut_share > 0.0 {
+            let cut = format!("at most {:.4} % of those who land", 100.0 * self.largest_cut_share);
+            rows.insert(2, row("weakest links cut", &cut));
         }
         block("Network", rows)
     }
@@ -433,8 +436,8 @@ pub(super) fn weather(prepared: &Prepared) -> String {
             Some(Correlation::None) | None => "0: every patch has years of its own".to_owned(),
         };
         let mut rows = vec![row("correlation of patches", &between_patches)];
-        // The e and y of an occupancy model have one deviate.
-        if prepared.life_history.occupancy.is_none() {
+        // Growth, and the e and y of an occupancy model, have one deviate.
+        if prepared.life_history.kind == "stages" {
             rows.push(row("of survival with fecundity", &short(environment.between_rates)));
         }
         if environment.between_stages < 1.0 {
