@@ -2,7 +2,7 @@
 //!
 //! Forms that multiply rates are scaled so that the local growth rate is exactly 1 where N equals K: with phi* the
 //! multiplier of the rates acted on that makes the dominant eigenvalue 1, every curve here passes through 1 at N = 0 and
-//! phi* at N = K. A new form is one file and one line in [`CURVES`].
+//! phi* at N = K. A new form is one file and one line in `CURVES`.
 
 mod beverton_holt;
 mod ricker;

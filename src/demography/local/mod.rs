@@ -1,6 +1,6 @@
 //! Local models: what one year does to the individuals of one patch.
 //!
-//! A new kind is one file and one line in [`KINDS`].
+//! A new kind is one file and one line in `KINDS`.
 
 mod counts;
 mod occupancy;
