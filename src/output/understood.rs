@@ -182,7 +182,7 @@ impl Landscape {
     }
 
     fn text(&self) -> String {
-        let mut rows = vec![
+        let rows = vec![
             row("patches", &format!("{}, in {}", grouped(self.patches as u64), self.coordinates)),
             row(
                 "extent",
