@@ -101,6 +101,20 @@ proptest! {
         read_bytes(collection(&[&polygon(&rings), &point(5.0, 52.0)]).as_bytes()).iter().for_each(assert_sane);
     }
 
+    /// These broke an assertion within the overlay that mends outlines.
+    #[test]
+    fn rings_that_the_overlay_stumbles_over(shift in 0..3_i32) {
+        let x = |x: i32| format!("{:.2}", 5.0 + f64::from(x + shift) / 100.0);
+        let ring = |points: &[(i32, i32)]| {
+            let positions: Vec<String> =
+                points.iter().map(|(a, b)| format!("{} {:.2}", x(*a), 52.0 + f64::from(*b) / 100.0)).collect();
+            positions.join(", ")
+        };
+        let rings = [ring(&[(1, 3), (1, 2), (2, 5), (3, 5)]), ring(&[(1, 0), (0, 5), (3, 2)])];
+        let rings: Vec<&str> = rings.iter().map(String::as_str).collect();
+        read_bytes(collection(&[&polygon(&rings), &point(5.2, 52.0)]).as_bytes()).iter().for_each(assert_sane);
+    }
+
     #[test]
     fn the_order_of_the_features_changes_nothing(order in Just(vec![0, 1, 2, 3, 4, 5]).prop_shuffle()) {
         let root: serde_json::Value = serde_json::from_str(&collection(&[

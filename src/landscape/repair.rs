@@ -7,7 +7,10 @@ use std::ops::{ControlFlow, Range};
 
 use geo::line_intersection::{LineIntersection, line_intersection};
 use geo::orient::Direction;
-use geo::{Area, BoundingRect, Coord, Line, MakeValid, MapCoords, MultiPolygon, Orient, Polygon, Rect, unary_union};
+use geo::{
+    Area, BoundingRect, Coord, CoordsIter, Line, MakeValid, MapCoords, MultiPolygon, Orient, Polygon, Rect, Validation,
+    unary_union,
+};
 
 use super::edges::{EdgeTree, Search};
 
@@ -97,12 +100,25 @@ fn same_area(part: &Polygon<f64>, mended: &MultiPolygon<f64>) -> bool {
 }
 
 fn mend(part: &Polygon<f64>, fault: Fault) -> Verdict {
-    match part.map_coords(|at| at * FINER).make_valid() {
-        Ok(mended) if mended.unsigned_area() > 0.0 => Verdict::Mended(mended.map_coords(|at| at / FINER), fault),
-        Ok(_) => Verdict::Hopeless(Fault::NoArea),
-        Err(_) => Verdict::Hopeless(fault),
+    match overlay(|| part.map_coords(|at| at * FINER).make_valid()) {
+        Some(Ok(mended)) if mended.unsigned_area() <= 0.0 => Verdict::Hopeless(Fault::NoArea),
+        Some(Ok(mended)) if is_right(&mended) => Verdict::Mended(mended.map_coords(|at| at / FINER), fault),
+        _ => Verdict::Hopeless(fault),
     }
 }
+
+/// A few rings that double back on themselves break an assertion within the overlay: they count as beyond repair.
+fn overlay<T>(work: impl FnOnce() -> T) -> Option<T> {
+    std::panic::catch_unwind(std::panic::AssertUnwindSafe(work)).ok()
+}
+
+/// Whether a repair came out sound. Large ones, for which that takes long, are taken at their word.
+fn is_right(mended: &MultiPolygon<f64>) -> bool {
+    mended.coords_count() > MOST_LOOKED_AT || mended.is_valid()
+}
+
+/// The most vertices of a repair that is looked at again.
+const MOST_LOOKED_AT: usize = 2_000;
 
 /// A point on a hole that does not lie in the shell and outside the other holes, given that no rings cross.
 fn stray_hole(tree: &EdgeTree) -> Option<Coord<f64>> {
@@ -123,7 +139,7 @@ fn join_overlapping(parts: &[Polygon<f64>]) -> Option<MultiPolygon<f64>> {
     }
     let separate: f64 = parts.iter().map(Area::unsigned_area).sum();
     let oriented: Vec<Polygon<f64>> = parts.iter().map(|part| part.orient(Direction::Default)).collect();
-    let joined = unary_union(&oriented);
+    let joined = overlay(|| unary_union(&oriented))?;
     (joined.unsigned_area() < separate * (1.0 - SAME_UNION)).then_some(joined)
 }
 
