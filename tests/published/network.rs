@@ -216,11 +216,16 @@ fn landing_in_a_disc_is_the_integral_of_the_kernel() {
     }
 }
 
+/// Where landing under `open` misses 1 %: the far flank of a gaussian of short mean, which steepens beyond what the spread of
+/// start points follows. A case that comes right must leave the list; a new one must not come.
+const KNOWN_TO_BE_COARSE: &[&str] = &[
+    "gaussian mean 0.5 km, at [4.0, -3.0]: exact 7.1e-23, off by -6.3 %",
+    "gaussian mean 1.4 km, at [4.0, -3.0]: exact 2.4e-5, off by -2.9 %",
+];
+
 /// Two rectangles side by side: the kernel averaged over all pairs of points, from the distribution of the difference
 /// of two uniform points (a product of trapezoids), by the midpoint rule; computed here, another way than the network's.
-/// Near and far patches both. Points stand for the source (and, farther off, for the target), so the far flank of the
-/// gaussian, which steepens, is the hardest: 1 % where the probability is above a thousandth, 3 % above a millionth, 10 %
-/// below.
+/// Near and far patches both, to 1 %, but for the cases known to be coarser.
 #[test]
 fn landing_between_rectangles_is_the_double_integral() {
     // Probability density of the difference between uniform points of [0, a] and [shift, shift + b], at u.
@@ -242,29 +247,33 @@ fn landing_between_rectangles_is_the_double_integral() {
         columns.sum::<f64>() * target[0] * target[1]
     };
     let source = [1.0, 0.6];
+    let mut beyond: Vec<String> = Vec::new();
     for mean in [0.5, 1.4, 6.0] {
         let kernels = [
-            Kernel::new(Exponential::new(Scale::MeanKm(mean))),
-            Kernel::new(Gaussian::new(Scale::MeanKm(mean))),
-            Kernel::new(TwoDt::new(2.5, Scale::MeanKm(mean))),
+            ("exponential", Kernel::new(Exponential::new(Scale::MeanKm(mean)))),
+            ("gaussian", Kernel::new(Gaussian::new(Scale::MeanKm(mean)))),
+            ("2Dt", Kernel::new(TwoDt::new(2.5, Scale::MeanKm(mean)))),
         ];
         for (shift, target) in
             [([1.0, 0.0], [0.8, 0.6]), ([1.3, 0.2], [0.3, 2.0]), ([2.5, 1.0], [0.4, 0.4]), ([4.0, -3.0], [1.0, 1.0])]
         {
-            for kernel in &kernels {
+            for (name, kernel) in &kernels {
                 let patches = vec![rectangle("a", [0.0, 0.0], source), rectangle("b", shift, target)];
                 let network = build(&landscape(patches), &table(kernel, Settlement::Open, 0.0));
                 let own = integral(kernel, [0.0, 0.0], source, source);
                 let exact = integral(kernel, shift, source, target) / (1.0 - own);
-                let tolerance = match exact {
-                    1e-3.. => 0.01,
-                    1e-6.. => 0.03,
-                    _ => 0.1,
-                };
-                close(probability(&network, 0, 1), exact, tolerance);
+                let off = probability(&network, 0, 1) / exact - 1.0;
+                if off.abs() > 0.01 {
+                    beyond.push(format!(
+                        "{} mean {mean} km, at {shift:?}: exact {exact:.1e}, off by {:.1} %",
+                        name,
+                        100.0 * off
+                    ));
+                }
             }
         }
     }
+    assert_eq!(beyond, KNOWN_TO_BE_COARSE);
 }
 
 /// Arrivals w_ij / sum w_ik exp(-0.15 d_ij) with w_ij = k(d_ij) A_j^b; computed independently.
